@@ -1,1 +1,1 @@
-"""footcal."""
+"""Files: atomic writes, tables, the bench session's folder, the robot log, truth."""
