@@ -180,7 +180,7 @@ def _session(
 ) -> Session:
     readings = tables["readings"]
     at = place("readings")
-    t_s = _times(readings, "t_s", at)
+    t_s, raw = _times(readings, "t_s", at), _raw(readings, at)
     ref_N = _column(readings, "ref_N") if "ref_N" in readings else None
     reference = None
     if "reference" in tables:
@@ -197,7 +197,7 @@ def _session(
     else:
         steps = no_steps()
     temp_C = _temperature(t_s, readings, tables.get("temperature"), place)
-    return Session(folder, meta, t_s, _raw(readings, at), temp_C, ref_N, reference, steps, digest)
+    return Session(folder, meta, t_s, raw, temp_C, ref_N, reference, steps, digest)
 
 
 def _raw(readings: pd.DataFrame, at: Callable[[int], str]) -> FloatArray:

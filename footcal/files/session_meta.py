@@ -151,7 +151,8 @@ def meta_from_mapping(table: Mapping[str, Any], where: str) -> SessionMeta:
 
 def meta_text(meta: SessionMeta) -> str:
     """Return the record as the text of a `session.toml`; what is None is left out."""
-    stated = {name: getattr(meta, name) for name in _CHECKS if getattr(meta, name) not in {None, ()}}
+    values = {name: getattr(meta, name) for name in _CHECKS}
+    stated = {name: value for name, value in values.items() if value is not None and value != ()}
     return toml_text({**stated, **meta.extra})
 
 

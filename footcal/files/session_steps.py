@@ -65,11 +65,16 @@ def normal_steps(table: pd.DataFrame, t_s: FloatArray, place: Place) -> pd.DataF
 
 
 def _with_all_columns(table: pd.DataFrame) -> pd.DataFrame:
-    table = table.copy()
+    columns: dict[str, object] = {}
     for name in (*COLUMNS, "void_of"):
-        if name not in table:
-            table[name] = "" if name in TEXT_COLUMNS else np.nan
-    return table
+        if name in TEXT_COLUMNS:
+            cells = table[name] if name in table else [""] * len(table)
+            columns[name] = np.array(["" if pd.isna(cell) else str(cell) for cell in cells], dtype=object)
+        else:
+            columns[name] = table[name].to_numpy(dtype=np.float64) if name in table else np.full(len(table), np.nan)
+    return pd.DataFrame(columns, dtype=object).astype(
+        {name: np.float64 for name in columns if name not in TEXT_COLUMNS}
+    )
 
 
 def _without_voided(table: pd.DataFrame, place: Place) -> pd.DataFrame:
