@@ -36,7 +36,7 @@ def max_permissible_error_kg(nominal_kg: float, oiml_class: str) -> float:
     raise SettingError(
         where="nominal_kg",
         what=f"class {oiml_class} has no weight of {nominal_kg:g} kg",
-        mend="Enter a weight of several pieces piece by piece; a weight without a class needs a mass and its uncertainty.",
+        mend="Enter each piece by itself; a weight without a class needs a mass and its uncertainty.",
     )
 
 

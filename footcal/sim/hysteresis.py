@@ -1,4 +1,4 @@
-"""Rate-independent loops of simulated sensors: a Preisach relay field, and Maxwell-slip elements with load-dependent limits.
+"""Rate-independent loops of simulated sensors: Preisach relays; Maxwell-slip elements with load-dependent limits.
 
 Both are forward laws (force in, strain out), worked in shares of full scale. Sources: F. Preisach, Z. Phys. 94 (1935)
 277, in the Everett form of I. D. Mayergoyz, "Mathematical Models of Hysteresis"; W. D. Iwan, J. Appl. Mech. 33 (1966)
@@ -7,7 +7,7 @@ Both are forward laws (force in, strain out), worked in shares of full scale. So
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -33,6 +33,10 @@ class Preisach:
     load_power: float
     base: float = 0.35
 
+    def stronger(self, factor: float) -> Preisach:
+        """Return the same field with a loop that many times as wide."""
+        return replace(self, share=self.share * factor)
+
     def strain(self, force: FloatArray) -> FloatArray:
         """Return the strain for a force history that follows a full press and release; (n,), shares of full scale."""
         on = _relays_on(force, self.width_power, self.load_power, self.base)
@@ -50,6 +54,10 @@ class MaxwellSlip:
     limits: FloatArray  # (m,) slip limit per unit of load
     reach: FloatArray  # (m,) strain at which an element slips when the load is full
     base: float  # load-free part of the limit: what an unloaded pad still holds back
+
+    def stronger(self, factor: float) -> MaxwellSlip:
+        """Return the same elements with limits that many times as high."""
+        return replace(self, limits=self.limits * factor)
 
     def strain(self, force: FloatArray) -> FloatArray:
         """Return the strain for a force history that follows a full press and release; (n,), shares of full scale."""

@@ -1,4 +1,4 @@
-"""The mechanical half of a simulated sensor, force to strain: hysteresis and creep, one after the other or side by side."""
+"""The mechanical half of a simulated sensor, force to strain: hysteresis and creep, in a row or side by side."""
 
 from __future__ import annotations
 
@@ -28,7 +28,7 @@ class Mechanics:
     full: float = 1.0
 
     def strain(self, t_s: FloatArray, force: FloatArray, temp_C: FloatArray, before_s: float = 20.0) -> FloatArray:
-        """Return strain for a force history in shares of full scale, both (n,), at sensing-element temperatures (n,)."""
+        """Return strain for a force history (n,) in shares of full scale, the element being at `temp_C` (n,)."""
         held = self.loop.strain(force)
         crept = self.chain.strain(t_s, held if self.in_series else force, temp_C, before_s)
         result: FloatArray = (held + crept - self.zero) / (self.full - self.zero)
@@ -64,21 +64,15 @@ def _cycle(mechanics: Mechanics) -> FloatArray:
 
 def scaled(mechanics: Mechanics, loop: float, creep: float) -> Mechanics:
     """Return the mechanics with loop and creep that many times as strong, strain normalised again."""
-    old = mechanics.loop
-    new: Preisach | MaxwellSlip
-    if isinstance(old, Preisach):
-        new = replace(old, share=old.share * loop)
-    else:
-        new = replace(old, limits=old.limits * loop)
     chain = replace(mechanics.chain, gains=mechanics.chain.gains * creep)
-    return replace(mechanics, loop=new, chain=chain).normalised()
+    return replace(mechanics, loop=mechanics.loop.stronger(loop), chain=chain).normalised()
 
 
 def tuned(mechanics: Mechanics, loop_share: float, creep_share: float) -> Mechanics:
     """Return the mechanics with these realised figures, by repeated proportional correction."""
     now = mechanics.normalised()
     for _ in range(12):
-        # Creep adds to the stepped loop, so the relays or sliders carry only what is left; never less than a tenth.
+        # Creep adds to the stepped loop, so relays and sliders carry only what is left.
         loop = np.clip(loop_share / now.loop_share(), 0.5, 2.0)
         creep = np.clip(creep_share / now.creep_share(), 0.2, 5.0)
         now = scaled(now, float(loop), float(creep))

@@ -45,6 +45,22 @@ def windows_s(t_s: FloatArray, converter_s: float) -> FloatArray:
     return result
 
 
+def window_mean(t_s: FloatArray, signal: FloatArray, ends_s: FloatArray, window_s: FloatArray) -> FloatArray:
+    """Return the mean over the `window_s` (m,) before each of `ends_s` (m,) of a signal that is straight in between."""
+    area = np.concatenate([[0.0], np.cumsum(0.5 * (signal[1:] + signal[:-1]) * np.diff(t_s))])
+
+    def area_to(at_s: FloatArray) -> FloatArray:
+        left = np.clip(np.searchsorted(t_s, at_s, side="right") - 1, 0, max(t_s.size - 2, 0))
+        into_s = at_s - t_s[left]  # before the first sample the signal stood where it starts
+        if t_s.size == 1:
+            return into_s * signal[0]
+        slope = (signal[left + 1] - signal[left]) / (t_s[left + 1] - t_s[left])
+        return area[left] + into_s * (signal[left] + 0.5 * np.where(into_s < 0.0, 0.0, slope) * into_s)
+
+    result: FloatArray = (area_to(ends_s) - area_to(ends_s - window_s)) / window_s
+    return result
+
+
 @njit(cache=True)
 def _wander(t_s: FloatArray, taus_s: FloatArray, drawn: FloatArray) -> FloatArray:
     count = taus_s.size

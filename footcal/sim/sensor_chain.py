@@ -14,7 +14,7 @@ import numpy as np
 from footcal.errors import SettingError
 from footcal.records import FloatArray
 from footcal.sim.mechanics import BENCH_C, Mechanics
-from footcal.sim.noise import Noise, low_pass, wander, windows_s
+from footcal.sim.noise import Noise, low_pass, wander, window_mean, windows_s
 from footcal.sim.sensor_table import SensorSheet
 from footcal.sim.transduction import Bridge, Capacitor, Divider, Magnet
 
@@ -86,7 +86,7 @@ class SimulatedSensor:
         )
 
     def aged(self, *, span: float = 0.0, zero: float = 0.0, noise: float = 1.0) -> SimulatedSensor:
-        """Return the sensor grown old: relative change of span, shift of zero (share of full output), factor on noise."""
+        """Return the sensor grown old: change of span (share), shift of zero (share of full output), noise factor."""
         return replace(
             self,
             day_zero=self.day_zero + zero,
@@ -120,14 +120,36 @@ class SimulatedSensor:
             SettingError: shapes differ, a value is not finite, or times do not rise.
         """
         t_s, force_N, temp_C = _checked(t_s, force_N, temp_C)
-        window_s = windows_s(t_s, 1.0 / self.rate_Hz)
-        signal = self.signal(t_s, force_N, temp_C, side_N)
-        lagged = low_pass(t_s, signal, self.lag_s)
-        step_s = np.diff(t_s, prepend=t_s[0] - window_s[0])
-        averaged = lagged - 0.5 * np.diff(lagged, prepend=lagged[0]) * window_s / step_s
-        noisy = averaged + self._full_signal() * self.noise.draw(t_s, window_s, rng)
+        lagged = low_pass(t_s, self.signal(t_s, force_N, temp_C, side_N), self.lag_s)
+        return self._converted(t_s, t_s, lagged, rng)
+
+    def sample(
+        self,
+        t_read_s: FloatArray,
+        t_s: FloatArray,
+        force_N: FloatArray,
+        temp_C: FloatArray | float,
+        rng: np.random.Generator,
+    ) -> FloatArray:
+        """Return raw counts, (m,), at reading times that are fewer than the times of the force history, (n,).
+
+        As `respond`, with the converter averaging what happened between its readings (at most its own period).
+
+        Raises:
+            SettingError: as `respond`.
+        """
+        t_s, force_N, temp_C = _checked(t_s, force_N, temp_C)
+        lagged = low_pass(t_s, self.signal(t_s, force_N, temp_C), self.lag_s)
+        return self._converted(np.ascontiguousarray(t_read_s, dtype=float), t_s, lagged, rng)
+
+    def _converted(
+        self, t_read_s: FloatArray, t_s: FloatArray, signal: FloatArray, rng: np.random.Generator
+    ) -> FloatArray:
+        window_s = windows_s(t_read_s, 1.0 / self.rate_Hz)
+        averaged = window_mean(t_s, signal, t_read_s, window_s)
+        noisy = averaged + self._full_signal() * self.noise.draw(t_read_s, window_s, rng)
         if self.supply_share > 0.0:
-            noisy = noisy * (1.0 + self.supply_share * wander(t_s, SUPPLY_TAUS_s, rng))
+            noisy = noisy * (1.0 + self.supply_share * wander(t_read_s, SUPPLY_TAUS_s, rng))
         return self.converter.counts(noisy)
 
     def signal(
@@ -141,13 +163,11 @@ class SimulatedSensor:
         strain = strain * (1.0 + self.day_span) * (1.0 + self.span_per_K[0] * off_K + self.span_per_K[1] * off_K**2)
         zero = self.day_zero + self.zero_per_K[0] * off_K + self.zero_per_K[1] * off_K**2
         if not isinstance(self.curve, Divider):
-            result: FloatArray = self.curve.signal(strain) + zero
-            return result
+            return self.curve.signal(strain) + zero
         # A pad's zero moves by its leak: the signal is turned into conductance, the leak added, and turned back.
         ratio = self.curve.signal(strain)
         conductance = np.maximum(ratio / (1.0 - ratio) + zero * self._full_signal() * (1.0 + self.curve.leak) ** 2, 0.0)
-        result = conductance / (1.0 + conductance)
-        return result
+        return conductance / (1.0 + conductance)
 
     def thermometer(self, t_s: FloatArray, temp_C: FloatArray, rng: np.random.Generator) -> FloatArray:
         """Return what the thermometer on the sensor body says, (n,), °C: 0.03 °C of noise, steps of 1/16 °C."""
@@ -162,10 +182,8 @@ class SimulatedSensor:
 
 def _sideways_N(side_N: FloatArray, cross: tuple[float, float]) -> FloatArray:
     if side_N.ndim == 1:
-        along_x: FloatArray = cross[0] * side_N
-        return along_x
-    both: FloatArray = cross[0] * side_N[:, 0] + cross[1] * side_N[:, 1]
-    return both
+        return cross[0] * side_N
+    return cross[0] * side_N[:, 0] + cross[1] * side_N[:, 1]
 
 
 def _checked(

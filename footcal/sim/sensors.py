@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import replace
 from typing import Final, get_args
 
 import numpy as np
@@ -14,7 +13,7 @@ from footcal.sim.mechanics import Mechanics, tuned
 from footcal.sim.noise import Noise
 from footcal.sim.sensor_chain import Converter, SimulatedSensor
 from footcal.sim.sensor_table import SHEETS, TYPICAL, Kind, SensorSheet
-from footcal.sim.transduction import Bridge, Capacitor, Curve, Divider, Magnet
+from footcal.sim.transduction import Bridge, Capacitor, Divider, Magnet
 from footcal.sim.viscoelastic import KelvinChain
 
 __all__ = ["SimulatedSensor", "draw_sensor"]
@@ -63,7 +62,7 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
 def _letter(kind: str) -> Kind:
     for letter in get_args(Kind):
         if kind == letter:
-            return letter  # type: ignore[no-any-return]
+            return letter
     for name, letter in TYPICAL.items():
         if kind == name:
             return letter

@@ -1,4 +1,4 @@
-"""How strain becomes an electrical signal in simulated sensors: bridge, resistive divider, magnet over a chip, capacitor.
+"""How strain becomes a signal in simulated sensors: bridge, resistive divider, magnet over a chip, capacitor.
 
 Every curve maps strain (share of full scale, 1 at full load) to a signal that is 0 without load and 1 at full load;
 `solve` bends it until its largest departure from the straight line between those two points has the asked size.

@@ -1,4 +1,4 @@
-"""Creep of simulated sensors: a chain of Kelvin elements whose strain and speed depend on load, and speed on temperature.
+"""Creep of simulated sensors: Kelvin elements whose strain and speed depend on load, and speed on temperature.
 
 Each element obeys d e/dt = rate(T, s) * (gain * s * (1 + stiffening * s) - e) / tau. Elements spread evenly over log
 time, with gains proportional to tau^power, creep as a power of time (W. N. Findley, "Creep and Relaxation of Nonlinear
