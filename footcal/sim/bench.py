@@ -38,6 +38,7 @@ class SimulatedSession:
     steps: dict[str, list[object]]  # columns of steps.csv
     reference: dict[str, FloatArray] | None  # t_ref_s, ref_N of a reference cell on its own clock
     force_N: FloatArray  # (n,) true force at each reading, for a massless foot
+    body_C: FloatArray  # (n,) true temperature of the sensor body
     clock_offset_s: float  # what the reference cell's clock shows less the true time
     history: ForceHistory
 
@@ -99,13 +100,14 @@ def run_session(
     ref = _reference(script, history, t_s, offset_s, reference, sensor.capacity_N, rng) if "pump" in parts else {}
     if "t_ref_s" not in ref:
         readings |= ref
-    meta = _meta(sensor, box, foot_id, mount, mass_below_sensor_kg, start_utc)
+    meta = session_meta(sensor, box, foot_id, mount, mass_below_sensor_kg, start_utc)
     return SimulatedSession(
         meta=meta,
         readings=readings,
         steps=script.steps,
         reference=ref if "t_ref_s" in ref else None,
         force_N=history.force_N(t_s, sensed=False),
+        body_C=body_C,
         clock_offset_s=offset_s,
         history=history,
     )
@@ -218,9 +220,10 @@ def _rest_N(mount: str, mass_below_kg: float, box: Box) -> float:
     return pull_N if mount == "foot_up" else -pull_N
 
 
-def _meta(
+def session_meta(
     sensor: SimulatedSensor, box: Box, foot_id: str, mount: str, mass_below_kg: float, start_utc: str
 ) -> dict[str, object]:
+    """Return what session.toml says of a simulated session."""
     return {
         "foot_id": foot_id,
         "kind": sensor.sheet.transducer,

@@ -85,6 +85,10 @@ class SimulatedSensor:
             day_span=self.sheet.day_span_pct / 100.0 * float(rng.standard_normal()),
         )
 
+    def on_channel(self, rate_Hz: float) -> SimulatedSensor:
+        """Return the sensor read by a converter of another rate, such as the robot's own 1 kHz channel."""
+        return replace(self, sheet=replace(self.sheet, rate_Hz=rate_Hz))
+
     def aged(self, *, span: float = 0.0, zero: float = 0.0, noise: float = 1.0) -> SimulatedSensor:
         """Return the sensor grown old: change of span (share), shift of zero (share of full output), noise factor."""
         return replace(
