@@ -1,4 +1,4 @@
-"""One foot's calibration: read from its file with every check, written whole, turned into the model that the kernel runs."""
+"""One foot's calibration: read from its file with every check, written whole, turned into the kernel's model."""
 
 from __future__ import annotations
 
@@ -153,7 +153,7 @@ def _check_version(where: str, document: dict[str, Any]) -> None:
     if document.get("format") != "footcal calibration":
         raise FileFormatError(where, "this is no calibration file", "Name a file written by `footcal fit`.")
     version = str(document.get("version", "none"))
-    if version.split(".")[0] != VERSION.split(".")[0]:
+    if version.split(".", maxsplit=1)[0] != VERSION.split(".")[0]:
         raise FileFormatError(
             where=f"{where}, $.version",
             what=f"version {version} is not known here, this is version {VERSION}",

@@ -1,4 +1,4 @@
-"""One foot's streaming compensator for Python: owns its state, runs single readings or whole columns by the same kernel."""
+"""One foot's streaming compensator for Python: owns its state; single readings and columns take the same kernel."""
 
 from __future__ import annotations
 

@@ -71,7 +71,9 @@ def inverse_parameters(half_widths: FloatArray, weights: FloatArray) -> tuple[Fl
     Source: Kuhnen 2003, as quoted above. Needs w_0 > 0 and every partial sum of the weights positive.
     """
     sums = np.cumsum(weights)
-    new_widths = np.array([np.sum(weights[: i + 1] * (half_widths[i] - half_widths[: i + 1])) for i in range(len(weights))])
+    new_widths = np.array(
+        [np.sum(weights[: i + 1] * (half_widths[i] - half_widths[: i + 1])) for i in range(len(weights))]
+    )
     new_weights = np.empty(len(weights))
     new_weights[0] = 1.0 / weights[0]
     new_weights[1:] = -weights[1:] / (sums[1:] * sums[:-1])

@@ -1,4 +1,4 @@
-"""The streaming compensator: one compiled step from raw readings to newtons, the same code live, in batch and in replay."""
+"""The streaming compensator: one compiled step from raw readings to newtons, the same live, in batch and in replay."""
 
 from __future__ import annotations
 
@@ -67,7 +67,9 @@ def _take_temperature(t_ns: int, temp_C: float, s: Any, c: Any, k: int) -> None:
 def _is_spike(raw: float, dt_s: float, s: Any, c: Any, k: int) -> bool:
     """Hold back a jump no foot can make in one sample; the next reading beside it proves it real."""
     ends = abs(c.sen_u_span[k] - c.sen_u_zero[k])
-    jump = abs(arm_ratio(raw, c.sen_raw_max[k], c.sen_wiring[k]) - arm_ratio(s.sen_raw[k], c.sen_raw_max[k], c.sen_wiring[k]))
+    jump = abs(
+        arm_ratio(raw, c.sen_raw_max[k], c.sen_wiring[k]) - arm_ratio(s.sen_raw[k], c.sen_raw_max[k], c.sen_wiring[k])
+    )
     limit = max(0.15, 60.0 * dt_s) * ends
     held = s.sen_held_raw[k]
     if jump <= limit:
@@ -108,13 +110,13 @@ def _take_reading(t_ns: int, raw_in: float, s: Any, c: Any, k: int) -> None:
     _apparent(raw, theta, s, c, k)
     v = s.sen_phi[1, k]
     if fresh:
-        _start(t_ns, v, s, c, k)
+        start_state(t_ns, v, s, c, k)
     else:
-        _remember(dt_ns, v, s, c, k)
+        advance_state(dt_ns, v, s, c, k)
     s.sen_v[k] = v
     s.sen_t_ns[k] = t_ns
     s.sen_started[k] = 1
-    _features(v, theta, s, c, k)
+    write_features(v, theta, s, c, k)
     _force(theta, known_C, flags, s, c, k)
 
 
@@ -130,13 +132,11 @@ def _apparent(raw: float, theta: float, s: Any, c: Any, k: int) -> None:
         theta, x, bt[0, k], bt[1, k], bt[2, k], bt[3, k], bt[4, k]
     )
     slope = quintic_slope(x, b[1, k], b[2, k], b[3, k], b[4, k], b[5, k]) * bend_slope(straight, c.sen_gamma[k], 0.02)
-    s.sen_slope_N[k] = (
-        c.sen_capacity_N[k] * slope * arm_ratio_slope(raw, c.sen_raw_max[k], c.sen_wiring[k]) / ends
-    )
+    s.sen_slope_N[k] = c.sen_capacity_N[k] * slope * arm_ratio_slope(raw, c.sen_raw_max[k], c.sen_wiring[k]) / ends
 
 
 @njit(error_model="numpy")
-def _start(t_ns: int, v: float, s: Any, c: Any, k: int) -> None:
+def start_state(t_ns: int, v: float, s: Any, c: Any, k: int) -> None:
     """State at power-up: creep settled, loop as after a full press and release."""
     for i in range(8):
         s.sen_lp[i, k] = v
@@ -149,7 +149,7 @@ def _start(t_ns: int, v: float, s: Any, c: Any, k: int) -> None:
 
 
 @njit(error_model="numpy")
-def _remember(dt_ns: int, v: float, s: Any, c: Any, k: int) -> None:
+def advance_state(dt_ns: int, v: float, s: Any, c: Any, k: int) -> None:
     """Advance creep and play states over one interval."""
     if dt_ns != s.sen_dt_ns[k]:
         for i in range(8):
@@ -169,7 +169,7 @@ def _remember(dt_ns: int, v: float, s: Any, c: Any, k: int) -> None:
 
 
 @njit(error_model="numpy")
-def _features(v: float, theta: float, s: Any, c: Any, k: int) -> None:
+def write_features(v: float, theta: float, s: Any, c: Any, k: int) -> None:
     """Fill sen_phi in the order of model.FEATURES."""
     p = s.sen_phi
     p[0, k] = 1.0

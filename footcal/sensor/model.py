@@ -13,10 +13,9 @@ from typing import Final
 import numpy as np
 
 from footcal.records import FloatArray
-from footcal.sensor.creep import CREEP_TAU_S, N_CREEP
+from footcal.sensor.creep import CREEP_TAU_S
 from footcal.sensor.curve import N_POWERS
-from footcal.sensor.hysteresis import N_PLAY, PLAY_HALF_WIDTH
-from footcal.sensor.temperature import N_TEMPERATURE
+from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
 
 POWERS: Final = slice(0, N_POWERS)
 TEMPERATURE: Final = slice(6, 11)

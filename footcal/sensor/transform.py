@@ -1,4 +1,4 @@
-"""From raw counts to a normalised reading x: divider wirings undone, zero and span taken out, curvature bent by a power.
+"""From raw counts to a normalised reading x: divider wirings undone, zero and span taken out, curvature bent.
 
 Law: u is the raw value itself (cells, magnetic and capacitive pads) or the ratio of the two arms of a voltage divider,
 raw / (max - raw) for a pad wired to the supply and (max - raw) / raw for a pad wired to ground. Then
@@ -53,7 +53,7 @@ def bend(x: float, gamma: float, offset: float) -> float:
     """Return sign(x) ((|x| + offset)^gamma - offset^gamma); x itself where gamma is 1."""
     if gamma == 1.0:
         return x
-    size = (abs(x) + offset) ** gamma - offset**gamma
+    size: float = (abs(x) + offset) ** gamma - offset**gamma
     return size if x >= 0.0 else -size
 
 
@@ -62,7 +62,8 @@ def bend_slope(x: float, gamma: float, offset: float) -> float:
     """Return the derivative of `bend` by x."""
     if gamma == 1.0:
         return 1.0
-    return gamma * (abs(x) + offset) ** (gamma - 1.0)
+    slope: float = gamma * (abs(x) + offset) ** (gamma - 1.0)
+    return slope
 
 
 @njit(error_model="numpy")

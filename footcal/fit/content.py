@@ -1,0 +1,237 @@
+"""A finished fit as the content of a calibration file."""
+
+from __future__ import annotations
+
+import datetime as dt
+from typing import Any, Final
+
+import numpy as np
+
+from footcal import __version__
+from footcal.fit.choose import Candidate
+from footcal.fit.inputs import FitInput
+from footcal.fit.rows import Rows
+from footcal.fit.set_aside import Aside
+from footcal.fit.trust import DAY_SPAN, DAY_ZERO
+from footcal.records import FloatArray
+from footcal.sensor.creep import CREEP_TAU_S
+from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
+from footcal.sensor.lag import LEAD_FILTER_S
+from footcal.sensor.model import CREEPS, FEATURES, PLAYS, PLAYS_BY_LOAD, RuntimeUncertainty
+from footcal.sensor.transform import POWER_OFFSET
+
+CROSS_AXIS_DEFAULT: Final = {"cell": 0.01, "resistive": 0.03, "magnetic": 0.03, "capacitive": 0.03}
+UNLOAD_DECAY_S: Final = 6.0
+
+
+def calibration_content(
+    data: FitInput,
+    best: Candidate,
+    rows: Rows,
+    asides: list[Aside],
+    uncertainty: RuntimeUncertainty,
+    covariance: FloatArray,
+    notes: list[str],
+) -> dict[str, Any]:
+    """Return everything the calibration file holds but its digest, as plain JSON values."""
+    low_N, high_N = float(rows.target.min()) * data.capacity_N, float(rows.target.max()) * data.capacity_N
+    cycles, loads, pump = best.left_out.rms_percent()
+    now = dt.datetime.now(dt.UTC).isoformat(timespec="seconds")
+    return {
+        "foot_id": data.foot_id,
+        "sensor": {
+            "kind": data.kind,
+            "capacity_N": data.capacity_N,
+            "safe_limit_N": data.sessions[0].meta.safe_limit_N,
+        },
+        "provenance": {"made_utc": now, "tool_version": __version__, "sessions": _sessions(data)},
+        "input": _input(data, best),
+        "model": _model(data, best, covariance),
+        "unload": {"share_of_peak": unload_share(best, rows, data), "decay_s": UNLOAD_DECAY_S},
+        "zero": _zero(data),
+        "validity": {
+            "force_min_N": min(low_N, 0.0),
+            "force_max_N": high_N,
+            **_temperature_range(data),
+            "dynamic": is_dynamic(data),
+        },
+        "figures": {"cycles": cycles, "loads": loads, "pump": pump},
+        "set_aside": [
+            {
+                "session": data.sessions[data.session_of[aside.hold]].name,
+                "step": data.holds[aside.hold].step,
+                "reason": aside.reason,
+                "entered_kg": _finite(data.holds[aside.hold].mass_kg),
+                "fits_kg": aside.fits_kg,
+            }
+            for aside in asides
+        ],
+        "clock_offset_s": None,
+        "uncertainty": {
+            "runtime": {**{name: getattr(uncertainty, name) for name in _RUNTIME}, "rows": uncertainty.rows.tolist()},
+            "budget": _budget(data, best, rows, uncertainty, covariance),
+            "curve": uncertainty_curve(data, best, rows, uncertainty),
+        },
+        "history": [{"date_utc": _start(data) or now, "zero_N": 0.0, "span_pct": 0.0, "note": "as calibrated"}],
+        "notes": notes,
+    }
+
+
+_RUNTIME: Final = ("fixed", "relative", "moving", "noise", "temp_C", "temp_absent_C", "start", "beyond")
+
+
+def is_dynamic(data: FitInput) -> bool:
+    """Return whether quick data were fitted: at least four quick lifts, or pump rows."""
+    return sum(hold.kind == "quick" for hold in data.holds) >= 4 or bool(data.rows.pump.any())
+
+
+def unload_share(best: Candidate, rows: Rows, data: FitInput) -> float:
+    """Return what the unloaded foot still reads after the model, as a share of the highest load of the cycle before.
+
+    From the zero rows that follow a load: root mean square of the residual over the load just taken off.
+    """
+    shares, last = [], 0.0
+    for row in np.flatnonzero(~rows.pump):
+        if data.holds[rows.hold[row]].direction == "zero":
+            if last > 0.05:
+                shares.append(best.fitted.residual[row] / last)
+        else:
+            last = max(float(rows.target[row]), 0.7 * last)
+    return float(min(np.sqrt(np.mean(np.square(shares))), 1.0)) if shares else 0.02
+
+
+def uncertainty_curve(
+    data: FitInput, best: Candidate, rows: Rows, uncertainty: RuntimeUncertainty
+) -> list[dict[str, float]]:
+    """Return U (k = 2) of a settled reading at eleven forces over the range."""
+    top = float(rows.target.max())
+    holds = ~rows.pump
+    fit_part = np.sum((best.fitted.features[holds] @ uncertainty.rows.T) ** 2, axis=1)
+    load = rows.target[holds]
+    points = []
+    for share in np.linspace(0.0, top, 11):
+        near = np.argsort(np.abs(load - share))[: max(6, len(load) // 12)]
+        u2 = float(np.mean(fit_part[near])) + uncertainty.fixed**2 + (uncertainty.relative * share) ** 2
+        points.append({"force_N": float(share) * data.capacity_N, "U_N": 2.0 * float(np.sqrt(u2)) * data.capacity_N})
+    return points
+
+
+def _input(data: FitInput, best: Candidate) -> dict[str, Any]:
+    return {
+        "wiring": data.form.wiring,
+        "raw_min": data.form.raw_min,
+        "raw_max": data.form.raw_max,
+        "u_zero": data.reading.u_zero,
+        "u_span": data.reading.u_span,
+        "power": best.fitted.terms.gamma,
+        "power_offset": POWER_OFFSET,
+        "temp_ref_C": data.temp_ref_C,
+        "thermometer_lag_s": 2.0,
+        "lag_s": 0.0,
+        "lead_filter_s": LEAD_FILTER_S,
+    }
+
+
+def _model(data: FitInput, best: Candidate, covariance: FloatArray) -> dict[str, Any]:
+    fitted = best.fitted
+    cross_u = CROSS_AXIS_DEFAULT[data.kind]
+    time_s, swing = settle_rule(fitted.coefficients)
+    return {
+        "curve": fitted.curve.tolist(),
+        "curve_temperature": fitted.curve_temperature.tolist(),
+        "creep_tau_s": list(CREEP_TAU_S),
+        "creep_undone": fitted.creep_undone.tolist(),
+        "play_half_width": list(PLAY_HALF_WIDTH),
+        "features": list(FEATURES),
+        "coefficients": fitted.coefficients.tolist(),
+        "covariance": [covariance[i, : i + 1].tolist() for i in range(len(covariance))],
+        "cross_axis": {"x": 0.0, "y": 0.0, "u_x": cross_u, "u_y": cross_u, "tested": False},
+        "settle": {"time_s": time_s, "swing_share": swing},
+    }
+
+
+def settle_rule(coefficients: FloatArray) -> tuple[float, float]:
+    """Return after what time and what swing (share of full scale) the state at power-up matters less than 1 % FS.
+
+    A creep state that starts half a full scale wrong decays with its own time constant; a play operator is forgotten
+    once its input has swung over twice its half width.
+    """
+    gains, taus = np.abs(coefficients[CREEPS]), np.array(CREEP_TAU_S)
+    times = np.geomspace(0.01, 1000.0, 200)
+    left = 0.5 * np.exp(-times[:, None] / taus) @ gains
+    time_s = float(times[min(int(np.argmax(left < 0.01)) if (left < 0.01).any() else 199, 199)])
+    loops = np.abs(coefficients[PLAYS]) + np.abs(coefficients[PLAYS_BY_LOAD])
+    matter = loops * np.array(PLAY_HALF_WIDTH) > 0.002
+    widest = float(np.max(np.array(PLAY_HALF_WIDTH)[matter])) if matter.any() else 0.0
+    return time_s, min(2.0 * widest, 0.6)
+
+
+def _zero(data: FitInput) -> dict[str, Any]:
+    meta = data.sessions[0].meta
+    return {
+        "stated_for": "hanging foot" if meta.mount is None else "massless foot",
+        "mount": meta.mount if meta.mount in {"foot_up", "foot_down", "side"} else None,
+        "mass_below_sensor_kg": meta.mass_below_sensor_kg or 0.0,
+    }
+
+
+def _temperature_range(data: FitInput) -> dict[str, Any]:
+    if not data.channel.has_temperature:
+        return {"temp_min_C": 12.0, "temp_max_C": 32.0, "temperature_tested": False}
+    seen = np.concatenate([data.channel.temp_C[a:b] for a, b in zip(data.rows.start, data.rows.stop, strict=True)])
+    return {
+        "temp_min_C": round(float(seen.min()), 2),
+        "temp_max_C": round(float(seen.max()), 2),
+        "temperature_tested": data.temperatures > 1,
+    }
+
+
+def _budget(
+    data: FitInput, best: Candidate, rows: Rows, uncertainty: RuntimeUncertainty, covariance: FloatArray
+) -> list[dict[str, Any]]:
+    """Return the sources of uncertainty at the top of the range."""
+    top = float(rows.target.max())
+    highest = best.fitted.features[int(np.argmax(rows.target))]
+    full_scale_N = data.capacity_N
+    gravity = data.place.gravity_u_m_per_s2 / data.place.gravity_m_per_s2
+    masses_N = max(hold.load_u_N for hold in data.holds)
+    lines = [
+        ("fit (parameters)", float(np.sqrt(highest @ covariance @ highest)), "A", "covariance of the coefficients"),
+        ("local gravity", gravity * top, "B", f"{data.place.gravity_m_per_s2:g} m/s2, relative {gravity:.1e}"),
+        ("reference masses, gravity and air", masses_N / full_scale_N, "B", "standard uncertainty of the top load"),
+        ("fixed error left over", uncertainty.fixed, "A", "cycles and load levels left out, and zero between days"),
+        ("error in proportion to load", uncertainty.relative * top, "A", "as above, and span between days"),
+        ("noise of one sample", uncertainty.noise, "A", "opening zero"),
+        ("zero between days", DAY_ZERO[data.kind], "B", "stated default, common practice; part of the fixed error"),
+        ("span between days", DAY_SPAN[data.kind] * top, "B", "stated default, common practice; part of the above"),
+    ]
+    return [{"source": s, "u_N": u * full_scale_N, "kind": kind, "basis": basis} for s, u, kind, basis in lines]
+
+
+def _sessions(data: FitInput) -> list[dict[str, Any]]:
+    used = []
+    for number, session in enumerate(data.sessions):
+        meta = session.meta
+        used.append(
+            {
+                "name": session.name,
+                "sha256": session.digest or "0" * 64,
+                "start_utc": meta.start_utc.isoformat() if meta.start_utc else None,
+                "recipe": meta.recipe,
+                "recipe_sha256": meta.recipe_sha256,
+                "operator": meta.operator,
+                "weights": ", ".join(str(weight.get("name", "?")) for weight in meta.weights) or None,
+                "samples": len(session.t_s),
+                "holds": int(np.sum(data.session_of == number)),
+            }
+        )
+    return used
+
+
+def _start(data: FitInput) -> str | None:
+    start = data.sessions[-1].meta.start_utc
+    return start.isoformat() if start else None
+
+
+def _finite(value: float) -> float | None:
+    return value if np.isfinite(value) else None

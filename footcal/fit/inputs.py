@@ -1,0 +1,93 @@
+"""What a fit starts from: the sessions of one foot joined, holds with forces, and how the counts are to be read."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from footcal.errors import SessionError, SettingError
+from footcal.files.session import Session
+from footcal.fit.channel import Channel, join
+from footcal.fit.holds import BenchPlace, bench_place, holds_of
+from footcal.fit.passes import Reading
+from footcal.fit.reading import RawForm, first_press, raw_form, reading_of, temperature_levels
+from footcal.fit.rows import LEVEL_SHARE, Rows, hold_rows
+from footcal.records import Hold, IntArray
+
+
+@dataclass(frozen=True, slots=True)
+class FitInput:
+    """Everything read from the sessions, before any model."""
+
+    sessions: tuple[Session, ...]
+    foot_id: str
+    kind: str
+    capacity_N: float
+    channel: Channel
+    holds: tuple[Hold, ...]
+    session_of: IntArray  # session index of each hold
+    rows: Rows
+    form: RawForm
+    reading: Reading
+    place: BenchPlace
+    temp_ref_C: float
+    temperatures: int
+    assumed: tuple[str, ...]
+
+    @property
+    def levels(self) -> int:
+        """Number of different loads, zero included."""
+        return len({round(hold.load_N / (LEVEL_SHARE * self.capacity_N)) for hold in self.holds})
+
+
+def read_input(
+    sessions: Sequence[Session], *, kind: str | None, capacity_N: float | None, raw_max: float | None
+) -> FitInput:
+    """Bring the sessions of one foot together; raises as `fit_sessions` does."""
+    if not sessions:
+        raise SettingError("fit", "no session was given", "Name one or more session folders.")
+    foot_id = _agreed(sessions, "foot_id", None, "--foot")
+    kind = _agreed(sessions, "kind", kind, "--kind")
+    full_scale_N = float(_agreed(sessions, "capacity_N", capacity_N, "--capacity"))
+    channel = join(list(sessions))
+    places = [bench_place(session.meta) for session in sessions]
+    holds, session_of = [], []
+    for number, (session, place) in enumerate(zip(sessions, places, strict=True)):
+        found = holds_of(session, place)
+        holds += found
+        session_of += [number] * len(found)
+    rows = hold_rows(channel, holds, np.array(session_of), full_scale_N)
+    stated_max = raw_max if raw_max is not None else sessions[0].meta.raw_max
+    form = raw_form(kind, channel.raw, first_press(channel, rows, holds), stated_max)
+    temp_ref_C, temperatures = temperature_levels(channel, rows)
+    return FitInput(
+        sessions=tuple(sessions),
+        foot_id=foot_id,
+        kind=kind,
+        capacity_N=full_scale_N,
+        channel=channel,
+        holds=tuple(holds),
+        session_of=np.array(session_of),
+        rows=rows,
+        form=form,
+        reading=reading_of(channel, rows, holds, form, temp_ref_C),
+        place=places[0],
+        temp_ref_C=temp_ref_C,
+        temperatures=temperatures,
+        assumed=(*places[0].assumed, *form.assumed),
+    )
+
+
+def _agreed(sessions: Sequence[Session], name: str, option: str | float | None, flag: str) -> str:
+    """Return the value that all sessions and the option agree on."""
+    said = {getattr(session.meta, name) for session in sessions} - {None}
+    if option is not None:
+        said.add(option)
+    if len(said) > 1:
+        values = ", ".join(str(value) for value in sorted(said, key=str))
+        raise SessionError("sessions", f"{name} differs: {values}", "Fit sessions of one foot and sensor together.")
+    if not said:
+        raise SettingError("fit", f"{name} is not known", f"Give {flag}, or write {name} into session.toml.")
+    return said.pop()  # type: ignore[no-any-return]

@@ -1,0 +1,72 @@
+"""Errors on data left out of the fit: by cycles, by load levels, by pump blocks, from merged triangular factors."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from footcal.fit.least_squares import solve_triangles, triangle
+from footcal.fit.passes import Fitted
+from footcal.fit.priors import prior_rows
+from footcal.fit.rows import Rows
+from footcal.records import FloatArray, IntArray
+
+TRIM: Final = 0.02  # this share of the largest residuals does not count; fixed, so that candidates compare
+
+
+@dataclass(frozen=True, slots=True)
+class LeftOut:
+    """Residuals of each row predicted by a fit that did not see its group; NaN where it belongs to none."""
+
+    cycles: FloatArray  # (rows,)
+    loads: FloatArray
+    pump: FloatArray
+
+    def rms_percent(self) -> tuple[float | None, float | None, float | None]:
+        """Trimmed RMS in per cent of full scale: cycles, loads, pump; None where nothing was left out."""
+        first, second, third = (trimmed_rms(values) for values in (self.cycles, self.loads, self.pump))
+        return first, second, third
+
+
+def trimmed_rms(residual: FloatArray) -> float | None:
+    """Return the RMS in per cent of the values that are not NaN, less the largest 2 %; None without values."""
+    known = np.sort(np.abs(residual[np.isfinite(residual)]))
+    if len(known) == 0:
+        return None
+    kept = known[: max(1, round(len(known) * (1.0 - TRIM)))]
+    return float(100.0 * np.sqrt(np.mean(kept**2)))
+
+
+def leave_out(fitted: Fitted, rows: Rows) -> LeftOut:
+    """Return the left-out residuals of a fit; curve, creep undone and row weights stay as fitted on all data."""
+    active = fitted.terms.active()
+    columns = fitted.features[:, active]
+    root = np.sqrt(rows.weight * fitted.row_weight)
+    prior = prior_rows(active, fitted.creep_rms)
+    prior_triangle = triangle(prior, np.zeros(len(prior)))
+    groupings = (rows.cycle, rows.level, rows.block)
+    residuals = (_predict_left_out(columns, rows.target, root, groups, prior_triangle) for groups in groupings)
+    return LeftOut(*residuals)
+
+
+def _predict_left_out(
+    columns: FloatArray, target: FloatArray, root: FloatArray, groups: IntArray, prior_triangle: FloatArray
+) -> FloatArray:
+    """Refit without each group in turn and predict it; rows of group -1 stay in every fit."""
+    names = np.unique(groups)
+    factors = {
+        int(name): triangle(columns[groups == name] * root[groups == name, None], (target * root)[groups == name])
+        for name in names
+    }
+    residual = np.full(len(target), np.nan)
+    left_out_names = [int(name) for name in names if name >= 0]
+    if len(left_out_names) < 2:
+        return residual
+    for name in left_out_names:
+        others = [factor for key, factor in factors.items() if key != name]
+        coefficients = solve_triangles([*others, prior_triangle])
+        mine = groups == name
+        residual[mine] = target[mine] - columns[mine] @ coefficients
+    return residual
