@@ -19,7 +19,7 @@ _PUBLIC = {  # public name -> module it lives in; imported when first used, so t
     "LegEstimate": "footcal.records",
     "Session": "footcal.files.session",
     "Tick": "footcal.records",
-    "convert": "footcal.fit.convert",
+    "convert_log": "footcal.calfile.convert",
     "curve": "footcal.fit.curve",
     "fit_sessions": "footcal.fit.engine",
     "mass_force": "footcal.physics.force",
