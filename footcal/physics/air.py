@@ -81,12 +81,13 @@ def measured_air(
         SettingError: a value out of its range.
     """
     density = air_density_kg_per_m3(temp_C, pressure_Pa, rel_humidity)
+    warmer = air_density_kg_per_m3(temp_C + 0.01, pressure_Pa, rel_humidity)
     other_share = rel_humidity + 0.01 if rel_humidity < 0.5 else rel_humidity - 0.01
-    per_share = abs(air_density_kg_per_m3(temp_C, pressure_Pa, other_share) - density) / 0.01
+    damper = air_density_kg_per_m3(temp_C, pressure_Pa, other_share)
     u = math.hypot(
-        density / (temp_C + 273.15) * temp_u_C,
+        (warmer - density) / 0.01 * temp_u_C,
         density / pressure_Pa * pressure_u_Pa,
-        per_share * rel_humidity_u,
+        (damper - density) / 0.01 * rel_humidity_u,
         density * FORMULA_U,
     )
     return AirValue(density, u)

@@ -62,7 +62,7 @@ def recipe_from(document: dict[str, Any], where: str) -> Recipe:
     try:
         return Recipe.model_validate(_tuples(document))
     except ValidationError as error:
-        first = max(error.errors(include_url=False), key=lambda problem: len(problem["loc"]))  # the nearest to the cause
+        first = max(error.errors(include_url=False), key=lambda problem: len(problem["loc"]))  # nearest to the cause
         path = _path(first["loc"])
         raise FileFormatError(
             where=f"{where}, {path}" if path else where, what=_what(first), mend=_mend(first)

@@ -138,7 +138,7 @@ class ColumnScale(Part):
 
 
 class Recipe(Part):
-    """One checked recipe. Shares are of the sensor's capacity; which of them the weights at hand can make is for `plan`."""
+    """One checked recipe. Shares are of the sensor's capacity; which of them the weights can make is for `plan`."""
 
     format: Literal[1]
     name: Annotated[str, Field(pattern=r"^[a-z][a-z0-9_]*$")]

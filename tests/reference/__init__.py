@@ -1,0 +1,1 @@
+"""Outside figures, and how to read them."""
