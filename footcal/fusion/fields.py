@@ -8,13 +8,15 @@ cost a microsecond a call, so the factories are cached.
 from __future__ import annotations
 
 from functools import lru_cache
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
+from numpy.typing import NDArray
 
 Field = tuple[str, str, tuple[int, ...]]
 
 MODES: Final = 3
+LINE_BYTES: Final = 64
 SWING, QUIET, MOVING = 0, 1, 2
 
 
@@ -58,8 +60,8 @@ def filter_state_fields(legs: int, joints: int) -> list[Field]:
     lanes, n = MODES * legs, state_size(joints)
     pairs = n * (n + 1) // 2
     estimate: list[Field] = [
-        ("fil_x", f, (n, lanes)),  # F, b, m, e
-        ("fil_P", f, (pairs, lanes)),  # lower triangle, row i column j at i (i + 1) / 2 + j
+        ("fil_x", f, (n, lanes + 2 * legs)),  # F, b, m, e; behind the last mode the first two stand once more
+        ("fil_P", f, (pairs, lanes + 2 * legs)),  # lower triangle, row i column j at i (i + 1) / 2 + j
         ("fil_mu", f, (lanes,)),  # mode probabilities
         ("fil_cov_N2", f, (6, legs)),  # combined force covariance: xx, xy, xz, yy, yz, zz
         ("fil_nis", f, (legs,)),  # normalised innovation squared, weighted over the modes
@@ -73,7 +75,10 @@ def filter_state_fields(legs: int, joints: int) -> list[Field]:
         ("fil_quad", f, (lanes,)),
         ("fil_det", f, (lanes,)),
         ("fil_cbar", f, (lanes,)),
-        ("fil_omega", f, (MODES, MODES, legs)),
+        ("fil_near", f, (n, lanes)),
+        ("fil_far", f, (n, lanes)),
+        ("fil_root", f, (2, n, lanes)),
+        ("fil_omega", f, (MODES, lanes)),
         ("fil_trans", f, (MODES, MODES)),
         ("fil_force_keep", f, (lanes,)),
         ("fil_force_in", f, (3, lanes)),
@@ -153,10 +158,41 @@ def filter_constant_fields(legs: int, joints: int) -> list[Field]:
     return [
         *rows,
         ("fil_rate_per_s", f, (MODES, MODES)),
+        ("fil_mix_keep", f, (2, state_size(joints), MODES * legs)),  # 0 where entering swing resets a state
         ("fil_period_s", f, (legs,)),  # time between two new foot readings; 0 where every tick brings one
         ("fil_hang_zero_N", f, (legs,)),  # weight below a sensor that was zeroed hanging
         ("fil_joint", f, (joints, legs)),  # 1 where there is a joint, 0 where padded
     ]
+
+
+def joined(*parts: list[Field]) -> np.dtype[np.void]:
+    """Return one dtype of all fields, each at the start of a cache line; a field that two parts declare alike stands once.
+
+    Raises:
+        TypeError: two parts declare one name with different type or shape.
+    """
+    formats: dict[str, np.dtype[Any]] = {}
+    for name, kind, shape in (field for part in parts for field in part):
+        form = np.dtype((kind, shape))
+        if formats.setdefault(name, form) != form:
+            message = f"field {name} is declared as {formats[name]} and as {form}"
+            raise TypeError(message)
+    ends = np.cumsum([0, *(-(-form.itemsize // LINE_BYTES) * LINE_BYTES for form in formats.values())])
+    return np.dtype(
+        {
+            "names": list(formats),
+            "formats": list(formats.values()),
+            "offsets": [int(end) for end in ends[:-1]],
+            "itemsize": int(ends[-1]),
+        }
+    )
+
+
+def one_record(dtype: np.dtype[np.void]) -> NDArray[np.void]:
+    """Return an array of one zeroed record that begins at a cache line (wide stores across lines cost some 3 times more)."""
+    room = np.zeros(dtype.itemsize + LINE_BYTES, dtype=np.uint8)
+    start = -room.ctypes.data % LINE_BYTES
+    return room[start : start + dtype.itemsize].view(dtype)
 
 
 @lru_cache(maxsize=32)

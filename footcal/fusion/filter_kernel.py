@@ -23,7 +23,10 @@ def tri(i: int, j: int) -> int:
 
 @njit(error_model="numpy")
 def _weights(s: Any, c: Any) -> None:
-    """Mode transition over one tick, P_ij = 1 - exp(-rate_ij dt), and the mixing weights of every leg."""
+    """Mode transition over one tick, P_ij = 1 - exp(-rate_ij dt), and the mixing weights of every lane.
+
+    Row r of a weight belongs to the source lane r * legs further on (turning round), so that sources lie side by side.
+    """
     dt = s.dt_s[0]
     trans = s.fil_trans
     for i in range(3):
@@ -35,101 +38,146 @@ def _weights(s: Any, c: Any) -> None:
         trans[i, i] = stay
     legs = s.axial_N.shape[0]
     mu, cbar, omega = s.fil_mu, s.fil_cbar, s.fil_omega
-    for l in range(legs):
-        for j in range(3):
+    for j in range(3):
+        for l in range(legs):
+            f = j * legs + l
             total = 0.0
             for i in range(3):
                 total += mu[i * legs + l] * trans[i, j]
-            cbar[j * legs + l] = total
-            for i in range(3):
-                omega[i, j, l] = mu[i * legs + l] * trans[i, j] / total
+            cbar[f] = total
+            for turn in range(3):
+                i = (j + turn) % 3
+                omega[turn, f] = mu[i * legs + l] * trans[i, j] / total
+                if not total > 0.0:  # a mode that nothing leads to stays itself, unmixed
+                    omega[turn, f] = 1.0 if turn == 0 else 0.0
+
+
+@njit(error_model="numpy")
+def _go_round(s: Any) -> None:
+    """Repeat the lanes of the first two modes behind the last, so that lane f + r * legs never runs out."""
+    legs = s.axial_N.shape[0]
+    x, P = s.fil_x, s.fil_P
+    for f in range(2 * legs):
+        for i in range(x.shape[0]):
+            x[i, 3 * legs + f] = x[i, f]
+        for p in range(P.shape[0]):
+            P[p, 3 * legs + f] = P[p, f]
 
 
 @njit(error_model="numpy")
 def _mix_states(s: Any, c: Any) -> None:
-    """Mix the means; what enters swing from a stance has force, friction error and residual at their priors (zero)."""
+    """Mix the means; what enters swing from a stance has force, friction error and residual at their priors (zero).
+
+    The spread of three means about their mixture is written as two vectors: the second and third joined first, then the
+    first with both, spread = near near' + far far'.
+    """
     legs = s.axial_N.shape[0]
+    lanes = s.fil_mu.shape[0]
     n = s.fil_x.shape[0]
-    joints = s.tau_new.shape[0]
-    x, mixed, omega = s.fil_x, s.fil_mixed_x, s.fil_omega
-    kept = 1.0 - c.fil_lift_reset[0]
-    for l in range(legs):
+    x, mixed, omega, keep = s.fil_x, s.fil_mixed_x, s.fil_omega, c.fil_mix_keep
+    for f in range(lanes):
+        w0, w1, w2 = omega[0, f], omega[1, f], omega[2, f]
+        other = max(w1 + w2, 1e-300)
+        near = sqrt(w1 / other * w2)
+        far = sqrt(w0 * (w1 + w2))
+        root1, root2 = sqrt(w1), sqrt(w2)
         for i in range(n):
-            x0, x1, x2 = x[i, l], x[i, legs + l], x[i, 2 * legs + l]
-            keep = 1.0 if 3 + joints <= i < 3 + 2 * joints else kept
-            mixed[i, l] = omega[0, 0, l] * x0 + keep * (omega[1, 0, l] * x1 + omega[2, 0, l] * x2)
-            mixed[i, legs + l] = omega[0, 1, l] * x0 + omega[1, 1, l] * x1 + omega[2, 1, l] * x2
-            mixed[i, 2 * legs + l] = omega[0, 2, l] * x0 + omega[1, 2, l] * x1 + omega[2, 2, l] * x2
+            x0, x1, x2 = x[i, f], keep[0, i, f] * x[i, f + legs], keep[1, i, f] * x[i, f + 2 * legs]
+            joined = (w1 * x1 + w2 * x2) / other
+            mixed[i, f] = w0 * x0 + (w1 * x1 + w2 * x2)
+            s.fil_near[i, f] = near * (x1 - x2)
+            s.fil_far[i, f] = far * (x0 - joined)
+            s.fil_root[0, i, f] = root1 * keep[0, i, f]
+            s.fil_root[1, i, f] = root2 * keep[1, i, f]
 
 
 @njit(error_model="numpy")
-def _mix_into_swing(s: Any, c: Any) -> None:
-    """Mix the covariances of swing, with the reset at lift-off."""
+def _mix_own(s: Any) -> None:
+    """Begin the mixed covariances: what each mode had itself, and the far spread."""
+    lanes = s.fil_mu.shape[0]
+    n = s.fil_x.shape[0]
+    half = n // 2  # two short loops: the compiler unrolls, and so vectorises, only bodies up to some size
+    P, mixed_P, far = s.fil_P, s.fil_mixed_P, s.fil_far
+    for f in range(lanes):
+        w = s.fil_omega[0, f]
+        for i in range(half):
+            for j in range(half):
+                if j <= i:
+                    p = i * (i + 1) // 2 + j
+                    mixed_P[p, f] = w * P[p, f] + far[i, f] * far[j, f]
+        for i in range(half, n):
+            for j in range(n):
+                if j <= i:
+                    p = i * (i + 1) // 2 + j
+                    mixed_P[p, f] = w * P[p, f] + far[i, f] * far[j, f]
+
+
+@njit(error_model="numpy")
+def _mix_near(s: Any) -> None:
+    """Add the near spread."""
+    lanes = s.fil_mu.shape[0]
+    n = s.fil_x.shape[0]
+    mixed_P, near = s.fil_mixed_P, s.fil_near
+    for f in range(lanes):
+        for i in range(n):
+            for j in range(n):
+                if j <= i:
+                    mixed_P[i * (i + 1) // 2 + j, f] += near[i, f] * near[j, f]
+
+
+def _make_mix(turn: int) -> Any:
+    """Return the step that adds the covariance of the mode `turn` places on; a literal, so that rows cannot overlap."""
+
+    @njit(error_model="numpy")
+    def mix(s: Any) -> None:
+        lanes = s.fil_mu.shape[0]
+        shift = turn * s.axial_N.shape[0]
+        n = s.fil_x.shape[0]
+        half, most = n // 2, 3 * n // 4
+        P, mixed_P, root = s.fil_P, s.fil_mixed_P, s.fil_root
+        for f in range(lanes):
+            for i in range(half):
+                for j in range(half):
+                    if j <= i:
+                        p = i * (i + 1) // 2 + j
+                        mixed_P[p, f] += root[turn - 1, i, f] * root[turn - 1, j, f] * P[p, f + shift]
+            for i in range(half, most):
+                for j in range(most):
+                    if j <= i:
+                        p = i * (i + 1) // 2 + j
+                        mixed_P[p, f] += root[turn - 1, i, f] * root[turn - 1, j, f] * P[p, f + shift]
+            for i in range(most, n):
+                for j in range(n):
+                    if j <= i:
+                        p = i * (i + 1) // 2 + j
+                        mixed_P[p, f] += root[turn - 1, i, f] * root[turn - 1, j, f] * P[p, f + shift]
+
+    return mix
+
+
+_mix_next = _make_mix(1)
+_mix_after_next = _make_mix(2)
+
+
+@njit(error_model="numpy")
+def _open_and_reset(s: Any, c: Any) -> None:
+    """What a change of mode adds: the priors' variance on entering swing, an open force on touchdown."""
     legs = s.axial_N.shape[0]
     n = s.fil_x.shape[0]
     joints = s.tau_new.shape[0]
-    x, mixed, P, mixed_P, omega = s.fil_x, s.fil_mixed_x, s.fil_P, s.fil_mixed_P, s.fil_omega
-    kept = 1.0 - c.fil_lift_reset[0]
+    mixed_P, omega, up = s.fil_mixed_P, s.fil_omega, s.fil_up_B
     for l in range(legs):
-        w0, w1, w2 = omega[0, 0, l], omega[1, 0, l], omega[2, 0, l]
-        for i in range(n):
-            ki = 1.0 if 3 + joints <= i < 3 + 2 * joints else kept
-            for j in range(n):
-                if j <= i:
-                    kj = 1.0 if 3 + joints <= j < 3 + 2 * joints else kept
-                    p = i * (i + 1) // 2 + j
-                    mi, mj = mixed[i, l], mixed[j, l]
-                    mixed_P[p, l] = (
-                        w0 * (P[p, l] + (x[i, l] - mi) * (x[j, l] - mj))
-                        + w1 * (ki * kj * P[p, legs + l] + (ki * x[i, legs + l] - mi) * (kj * x[j, legs + l] - mj))
-                        + w2
-                        * (ki * kj * P[p, 2 * legs + l] + (ki * x[i, 2 * legs + l] - mi) * (kj * x[j, 2 * legs + l] - mj))
-                    )
-    for l in range(legs):
-        fresh = c.fil_lift_reset[0] * (omega[1, 0, l] + omega[2, 0, l])
+        fresh = c.fil_lift_reset[0] * (omega[1, l] + omega[2, l])
+        opened1, opened2 = omega[2, legs + l], omega[1, 2 * legs + l]  # from swing into quiet, into moving
+        mixed_P[n * (n + 1) // 2 - 1, l] += fresh * s.fil_e_sd_N[l] ** 2
+        for k in range(joints):
+            mixed_P[(3 + k) * (4 + k) // 2 + 3 + k, l] += fresh * s.fric_sd_Nm[k, l] ** 2
         for i in range(3):
             mixed_P[i * (i + 1) // 2 + i, l] += fresh * c.fil_swing_sd_N[0] ** 2
-        for k in range(joints):
-            i = 3 + k
-            mixed_P[i * (i + 1) // 2 + i, l] += fresh * s.fric_sd_Nm[k, l] ** 2
-        mixed_P[n * (n + 1) // 2 - 1, l] += fresh * s.fil_e_sd_N[l] ** 2
-
-
-@njit(error_model="numpy")
-def _mix_into_stance(s: Any, c: Any) -> None:
-    """Mix the covariances of both stance modes; what comes from swing has its force opened (touchdown)."""
-    legs = s.axial_N.shape[0]
-    n = s.fil_x.shape[0]
-    x, P, mixed_P, omega = s.fil_x, s.fil_P, s.fil_mixed_P, s.fil_omega
-    for l in range(legs):
-        a0, a1, a2 = omega[0, 1, l], omega[1, 1, l], omega[2, 1, l]
-        b0, b1, b2 = omega[0, 2, l], omega[1, 2, l], omega[2, 2, l]
-        a01, a02, a12 = a0 * a1, a0 * a2, a1 * a2
-        b01, b02, b12 = b0 * b1, b0 * b2, b1 * b2
-        for i in range(n):
-            i01 = x[i, l] - x[i, legs + l]
-            i02 = x[i, l] - x[i, 2 * legs + l]
-            i12 = x[i, legs + l] - x[i, 2 * legs + l]
-            for j in range(n):
-                if j <= i:
-                    p = i * (i + 1) // 2 + j
-                    d01 = i01 * (x[j, l] - x[j, legs + l])
-                    d02 = i02 * (x[j, l] - x[j, 2 * legs + l])
-                    d12 = i12 * (x[j, legs + l] - x[j, 2 * legs + l])
-                    p0, p1, p2 = P[p, l], P[p, legs + l], P[p, 2 * legs + l]
-                    mixed_P[p, legs + l] = a0 * p0 + a1 * p1 + a2 * p2 + a01 * d01 + a02 * d02 + a12 * d12
-                    mixed_P[p, 2 * legs + l] = b0 * p0 + b1 * p1 + b2 * p2 + b01 * d01 + b02 * d02 + b12 * d12
-    up = s.fil_up_B
-    for l in range(legs):
-        for mode in range(1, 3):
-            opened = omega[0, mode, l]
-            for i in range(3):
-                for j in range(3):
-                    if j <= i:
-                        spread = c.fil_touch_up_N2[0] * up[i] * up[j]
-                        if i == j:
-                            spread += c.fil_touch_all_N2[0]
-                        mixed_P[i * (i + 1) // 2 + j, mode * legs + l] += opened * spread
+            for j in range(i + 1):
+                spread = c.fil_touch_up_N2[0] * up[i] * up[j] + (c.fil_touch_all_N2[0] if i == j else 0.0)
+                mixed_P[i * (i + 1) // 2 + j, legs + l] += opened1 * spread
+                mixed_P[i * (i + 1) // 2 + j, 2 * legs + l] += opened2 * spread
 
 
 @njit(error_model="numpy")
@@ -324,9 +372,13 @@ def _combine(s: Any) -> None:
 def predict(s: Any, c: Any) -> None:
     """Mix the modes and carry every filter over `dt_s`; the model rows are those `model_rows` has written."""
     _weights(s, c)
+    _go_round(s)
     _mix_states(s, c)
-    _mix_into_swing(s, c)
-    _mix_into_stance(s, c)
+    _mix_own(s)
+    _mix_near(s)
+    _mix_next(s)
+    _mix_after_next(s)
+    _open_and_reset(s, c)
     _predict_states(s)
     _predict_torque_rows(s)
     _predict_covariances(s)

@@ -6,19 +6,9 @@ from functools import lru_cache
 
 import numpy as np
 
-from footcal.fusion.fields import Field, filter_constant_fields, filter_state_fields, shared_state_fields
-from footcal.leg import leg_constant_fields, leg_state_fields
-from footcal.sensor import sensor_constant_fields, sensor_state_fields
-
-
-def joined(*parts: list[Field]) -> np.dtype[np.void]:
-    """Return one dtype of all fields; a field that two parts declare alike stands once.
-
-    Raises:
-        TypeError: two parts declare one name with different type or shape (numpy refuses the double name).
-    """
-    fields = dict.fromkeys((name, np.dtype(kind).str, shape) for part in parts for name, kind, shape in part)
-    return np.dtype(list(fields))
+from footcal.fusion.fields import filter_constant_fields, filter_state_fields, joined, shared_state_fields
+from footcal.leg.fields import leg_constant_fields, leg_state_fields
+from footcal.sensor.fields import sensor_constant_fields, sensor_state_fields
 
 
 @lru_cache(maxsize=32)

@@ -142,6 +142,12 @@ def fill_filter_constants(settings: FusionSettings, weight_N: float, joints_of_l
     rates[1, 0], rates[1, 2] = settings.quiet_to_swing_per_s, settings.quiet_to_moving_per_s
     rates[2, 0], rates[2, 1] = settings.moving_to_swing_per_s, settings.moving_to_quiet_per_s
     c["fil_rate_per_s"][:] = rates
+    legs, joints = len(joints_of_leg), c["fil_joint"].shape[0]
+    keep = c["fil_mix_keep"]
+    keep[:] = 1.0
+    reset_states = [*range(3 + joints), 3 + 2 * joints]  # force, friction error, residual; never the motor torques
+    for state in reset_states:
+        keep[:, state, :legs] = 1.0 - settings.lift_reset
     for leg, count in enumerate(joints_of_leg):
         c["fil_joint"][:, leg] = np.arange(c["fil_joint"].shape[0]) < count
 
