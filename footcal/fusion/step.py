@@ -10,6 +10,8 @@ from footcal.fusion.decide import decide
 from footcal.fusion.filter_kernel import predict, update
 from footcal.fusion.health import STALE, judge, watch
 from footcal.fusion.model_rows import fresh_filter, model_rows, readings, upright
+from footcal.leg.step import leg_step
+from footcal.sensor.kernel import sensor_step
 
 RESET_GAP_NS = 50_000_000
 
@@ -92,3 +94,24 @@ def repeat(s: Any, out: Any) -> None:
         out.event[l] = 0
         out.t_event_s[l] = float("nan")
         out.health[l] |= STALE
+
+
+@njit(error_model="numpy")
+def step(inp: Any, gravity: Any, s: Any, c: Any, out: Any) -> None:
+    """One tick of the whole robot.
+
+    Args:
+        inp: input record (`tick_dtype`); NaN means no new reading.
+        gravity: shape (3,), m/s2, body frame of a level robot; used while the inertial unit gives nothing.
+        s: state record; the only thing changed besides `out`.
+        c: constants record.
+        out: output record (`out_dtype`).
+    """
+    if not take_time(inp.t_ns, s):
+        repeat(s, out)
+        return
+    upright(inp, gravity, s)
+    sensor_step(inp, s, c)
+    leg_step(inp, gravity, s, c)
+    fuse(inp, s, c)
+    emit(s, out)
