@@ -12,7 +12,8 @@ from footcal.sim.hysteresis import MaxwellSlip, Preisach
 from footcal.sim.viscoelastic import KelvinChain
 
 BENCH_C: Final = 22.0
-STEPS: Final = 10  # loads of the probing cycle
+STEPS: Final = 20  # loads of the probing cycle
+LOADS: Final = np.linspace(0.0, 1.0, STEPS + 1)
 MOVE_s: Final = 1.0
 DWELL_s: Final = 10.0
 
@@ -36,29 +37,40 @@ class Mechanics:
 
     def normalised(self) -> Mechanics:
         """Return the same mechanics with strain 0 and 1 where they belong."""
-        plain = replace(self, zero=0.0, full=1.0)
-        loaded = _cycle(plain)
+        loaded = _cycle(replace(self, zero=0.0, full=1.0), BENCH_C)
         return replace(self, zero=float(loaded[0]), full=float(loaded[STEPS]))
 
     def loop_share(self) -> float:
-        """Return the largest difference of unloading and loading in a stepped cycle of 10 s dwell."""
-        loaded = _cycle(self)
-        return float(np.max(np.abs(loaded[STEPS:][::-1] - loaded[: STEPS + 1])))
+        """Return by how much more load the same strain asks on the way up than on the way down; steps of 10 s dwell."""
+        loaded = _cycle(self, BENCH_C)
+        up, down = loaded[: STEPS + 1], loaded[STEPS:][::-1]
+        return float(np.max(np.interp(down[1:], up, LOADS) - LOADS[1:]))
 
     def creep_share(self) -> float:
-        """Return what strain gains from 1 s to 60 s after full load."""
+        """Return what the reading gains from 1 s to 60 s after full load, by the slope of the loading curve there."""
         t_s = np.array([0.0, 0.1, 1.1, 60.1])
         strain = self.strain(t_s, np.array([0.0, 1.0, 1.0, 1.0]), np.full(4, BENCH_C))
-        return float(strain[3] - strain[2])
+        up = _cycle(self, BENCH_C)[: STEPS + 1]
+        return float((strain[3] - strain[2]) * (LOADS[-1] - LOADS[-2]) / (up[-1] - up[-2]))
+
+    def middle(self) -> FloatArray:
+        """Return the mean strain of loading and unloading at each of `LOADS`."""
+        loaded = _cycle(self, BENCH_C)
+        result: FloatArray = 0.5 * (loaded[: STEPS + 1] + loaded[STEPS:][::-1])
+        return result
+
+    def span_per_K(self) -> float:
+        """Return how much of the strain at full load comes with each degree by faster creep alone, 8 to 38 °C."""
+        full = [_cycle(self, temp_C)[[0, STEPS]] for temp_C in (8.0, 38.0)]
+        return float((full[1][1] - full[1][0] - full[0][1] + full[0][0]) / 30.0)
 
 
-def _cycle(mechanics: Mechanics) -> FloatArray:
+def _cycle(mechanics: Mechanics, temp_C: float) -> FloatArray:
     """Strain at the end of each dwell of one cycle, zero to full to zero, after a press; (2 * STEPS + 1,)."""
-    loads = np.concatenate([np.linspace(0.0, 1.0, STEPS + 1), np.linspace(1.0, 0.0, STEPS + 1)[1:]])
+    loads = np.concatenate([LOADS, LOADS[-2::-1]])
     force = np.concatenate([[0.0, 1.0, 1.0], np.repeat(loads, 2)])
     step = np.concatenate([[0.0, MOVE_s, DWELL_s], np.tile([MOVE_s, DWELL_s], loads.size)])
-    temp_C = np.full(force.size, BENCH_C)
-    result: FloatArray = mechanics.strain(np.cumsum(step), force, temp_C)[4::2]
+    result: FloatArray = mechanics.strain(np.cumsum(step), force, np.full(force.size, temp_C))[4::2]
     return result
 
 

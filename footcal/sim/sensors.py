@@ -8,6 +8,7 @@ from typing import Final, get_args
 import numpy as np
 
 from footcal.errors import SettingError
+from footcal.records import FloatArray
 from footcal.sim.hysteresis import MaxwellSlip, Preisach
 from footcal.sim.mechanics import Mechanics, tuned
 from footcal.sim.noise import Noise
@@ -41,16 +42,17 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
         raise SettingError(where="draw_sensor, capacity_N", what=f"{full_N:g} N is not above 0", mend="Give newtons.")
     angle_rad = rng.uniform(0.0, 2.0 * np.pi)
     cross = rng.uniform(*CROSS_RANGE)
-    curve = _CURVES[sheet.transducer](sheet, rng)
+    mechanics = _draw_mechanics(sheet, rng)
+    span_per_K, zero_per_K = _temperature(sheet.span_pct_per_K, rng), _temperature(sheet.zero_pct_per_K, rng)
     return SimulatedSensor(
         kind=letter,
         sheet=sheet,
         capacity_N=full_N,
         cross=(float(cross * np.cos(angle_rad)), float(cross * np.sin(angle_rad))),
-        mechanics=_draw_mechanics(sheet, rng),
-        span_per_K=_temperature(sheet.span_pct_per_K, rng),
-        zero_per_K=_temperature(sheet.zero_pct_per_K, rng),
-        curve=curve,
+        mechanics=mechanics,
+        span_per_K=(span_per_K[0] - mechanics.span_per_K(), span_per_K[1]),  # warm creep is faster and adds its own
+        zero_per_K=zero_per_K,
+        curve=_CURVES[sheet.transducer](sheet, mechanics.middle(), rng),
         lag_s=float(rng.uniform(0.3e-3, 1.2e-3)),
         thermal_lag_s=30.0 * _scatter(rng, 0.15),
         noise=Noise(total=sheet.noise_pct / 100.0 * _scatter(rng, 0.1), flicker_share=0.06, hum_share=sheet.hum_share),
@@ -113,28 +115,30 @@ def _draw_mechanics(sheet: SensorSheet, rng: np.random.Generator) -> Mechanics:
     return tuned(raw, sheet.loop_pct / 100.0 * _scatter(rng, 0.12), sheet.creep_pct / 100.0 * _scatter(rng, 0.12))
 
 
-def _draw_bridge(sheet: SensorSheet, rng: np.random.Generator) -> Bridge:
+def _draw_bridge(sheet: SensorSheet, strain: FloatArray, rng: np.random.Generator) -> Bridge:
     raw = Bridge(bow=0.0, skew=float(rng.uniform(-0.4, 0.4)), seat=float(rng.uniform(-0.25, 0.25)), seat_width=0.08)
-    return raw.solve(float(rng.choice([-1.0, 1.0])) * sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.12))
+    return raw.solve(float(rng.choice([-1.0, 1.0])) * sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.12), strain)
 
 
-def _draw_divider(sheet: SensorSheet, rng: np.random.Generator) -> Divider:
+def _draw_divider(sheet: SensorSheet, strain: FloatArray, rng: np.random.Generator) -> Divider:
     raw = Divider(conductance=1.0, power=float(rng.uniform(0.75, 1.05)), dead_band=sheet.dead_band_pct / 100.0)
-    return raw.solve(sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.06))
+    return raw.solve(sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.06), strain)
 
 
-def _draw_magnet(sheet: SensorSheet, rng: np.random.Generator) -> Magnet:
+def _draw_magnet(sheet: SensorSheet, strain: FloatArray, rng: np.random.Generator) -> Magnet:
     raw = Magnet(closing=0.1, stiffening=float(rng.uniform(0.6, 1.1)))
-    return raw.solve(float(rng.choice([-1.0, 1.0])) * sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.12))
+    return raw.solve(float(rng.choice([-1.0, 1.0])) * sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.12), strain)
 
 
-def _draw_capacitor(sheet: SensorSheet, rng: np.random.Generator) -> Capacitor:
+def _draw_capacitor(sheet: SensorSheet, strain: FloatArray, rng: np.random.Generator) -> Capacitor:
     stiff = bool(rng.random() < 0.5)  # the pad's stiffening wins over the closing gap, or the other way round
     raw = Capacitor(closing=0.1, stiffening=float(rng.uniform(1.1, 1.4) if stiff else rng.uniform(0.2, 0.5)))
-    return raw.solve((1.0 if stiff else -1.0) * sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.12))
+    return raw.solve((1.0 if stiff else -1.0) * sheet.nonlinearity_pct / 100.0 * _scatter(rng, 0.12), strain)
 
 
-_CURVES: Final[dict[str, Callable[[SensorSheet, np.random.Generator], Bridge | Divider | Magnet | Capacitor]]] = {
+_CURVES: Final[
+    dict[str, Callable[[SensorSheet, FloatArray, np.random.Generator], Bridge | Divider | Magnet | Capacitor]]
+] = {
     "cell": _draw_bridge,
     "resistive": _draw_divider,
     "magnetic": _draw_magnet,

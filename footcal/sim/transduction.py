@@ -26,29 +26,42 @@ class Curve(Protocol):
         """Return the signal, (n,), for strains of shape (n,)."""
         ...
 
-    def solve(self, nonlinearity: float) -> Self:
-        """Return the same curve bent to this signed departure from its terminal line (share of full output)."""
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
+        """Return the same curve bent to this signed departure from its terminal line (share of full output).
+
+        `strain` (n,) is that of loads spread evenly from 0 to full: the mechanics have a bend of their own.
+        """
         ...
 
 
-def departure(curve: Curve) -> float:
-    """Return the largest signed departure from the terminal line, as a share of full output."""
-    ends = curve.signal(np.array([0.0, 1.0]))
-    off = (curve.signal(GRID) - ends[0]) / (ends[1] - ends[0]) - GRID
+def departure(curve: Curve, strain: FloatArray) -> float:
+    """Return the largest signed departure from the terminal line, as a share of full output.
+
+    Args:
+        curve: the transducer.
+        strain: strains at loads spread evenly from 0 to full, (n,).
+    """
+    signal = curve.signal(strain)
+    off = (signal - signal[0]) / (signal[-1] - signal[0]) - np.linspace(0.0, 1.0, strain.size)
     return float(off[np.argmax(np.abs(off))])
 
 
-def _bend(curve: C, field: str, lo: float, hi: float, target: float) -> C:
-    def miss(value: float) -> float:
-        return departure(replace(curve, **{field: value})) - target
+def _bend(curve: C, field: str, values: FloatArray, target: float, strain: FloatArray) -> C:
+    """Find the value of a field that gives the asked departure; the departure may jump where it changes sign."""
 
-    if not miss(lo) * miss(hi) <= 0.0:
+    def miss(value: float) -> float:
+        return departure(replace(curve, **{field: value}), strain) - target
+
+    misses = np.array([miss(value) for value in values])
+    crossing = np.flatnonzero(misses[:-1] * misses[1:] <= 0.0)
+    if crossing.size == 0:
         raise SettingError(
             where=f"{type(curve).__name__}, {field}",
-            what=f"no value in {lo:g}..{hi:g} gives a nonlinearity of {target:g}",
+            what=f"no value in {values[0]:g}..{values[-1]:g} gives a nonlinearity of {target:g}",
             mend="Draw the other shape constants from a narrower range.",
         )
-    return replace(curve, **{field: float(brentq(miss, lo, hi, xtol=1e-10))})
+    at = crossing[np.argmin(np.abs(misses[crossing + 1] - misses[crossing]))]  # a true crossing, not the jump
+    return replace(curve, **{field: float(brentq(miss, values[at], values[at + 1], xtol=1e-12))})
 
 
 def bottoming(strain: FloatArray, start: float = 1.1, room: float = 0.3) -> FloatArray:
@@ -76,9 +89,9 @@ class Bridge:
         result: FloatArray = x + self.bow * (bowed + self.seat * seated * (x > 0.0) * (x < 1.0))
         return result
 
-    def solve(self, nonlinearity: float) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
         """Scale the bow."""
-        return _bend(self, "bow", -2.0 * abs(nonlinearity), 2.0 * abs(nonlinearity), nonlinearity)
+        return _bend(self, "bow", np.linspace(-6.0, 6.0, 49) * abs(nonlinearity), nonlinearity, strain)
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,9 +115,9 @@ class Divider:
         result: FloatArray = g / (1.0 + g)
         return result
 
-    def solve(self, nonlinearity: float) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
         """Choose the fixed resistor."""
-        return _bend(self, "conductance", 0.02, 60.0, nonlinearity)
+        return _bend(self, "conductance", np.geomspace(0.02, 60.0, 25), nonlinearity, strain)
 
 
 @dataclass(frozen=True, slots=True)
@@ -121,9 +134,9 @@ class Magnet:
         result: FloatArray = field / ((1.0 - self.closing) ** -3 - 1.0)
         return result
 
-    def solve(self, nonlinearity: float) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
         """Choose how much of the gap is used."""
-        return _bend(self, "closing", 1e-3, 0.6, nonlinearity)
+        return _bend(self, "closing", np.linspace(1e-3, 0.6, 49), nonlinearity, strain)
 
 
 @dataclass(frozen=True, slots=True)
@@ -140,6 +153,6 @@ class Capacitor:
         result: FloatArray = charge / (1.0 / (1.0 - self.closing) - 1.0)
         return result
 
-    def solve(self, nonlinearity: float) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
         """Choose how much of the gap is used."""
-        return _bend(self, "closing", 1e-3, 0.7, nonlinearity)
+        return _bend(self, "closing", np.linspace(1e-3, 0.7, 49), nonlinearity, strain)
