@@ -19,6 +19,7 @@ from footcal.records import FloatArray
 NOISE_A: Final = 0.2  # rms, of the current as reported
 STEP_A: Final = 0.01  # resolution of the telegram
 AMBIENT_C: Final = 25.0
+GIVE_BACK_rad: Final = 0.02  # travel after which a controller has put its position right
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,7 +86,7 @@ def draw_drives(kind: str, rng: np.random.Generator) -> tuple[Drive, Drive, Driv
         )
     else:  # Coulomb 60 to 150 % of the usual load torque (3 to 4.5, 1 to 4, 6 to 8 Nm, stand to trot)
         first, second, third = (
-            Drive(62.0, 0.028, -0.0010, 1.1e-5, c * v, 1.35, 0.08, 0.9, 0.30, 1e-3, 2500.0, 0.0, 0.005, (0.001, 0.002))
+            Drive(62.0, 0.028, -0.0010, 1.1e-5, c * v, 1.35, 0.08, 0.9, 0.30, 1e-3, 1200.0, 0.0, 0.005, (0.001, 0.002))
             for v, c in zip(vary, (2.8, 2.4, 4.8), strict=True)
         )
     return first, second, third
@@ -119,7 +120,7 @@ def run_drive(
     steps = np.diff(angle_rad, prepend=angle_rad[0])
     known = np.diff(load_Nm, prepend=load_Nm[0]) * (1.0 - drive.feedforward)
     start = float(rng.uniform(-0.5, 0.5)) * level[0]
-    bristle, micro = _bristles(steps, known, level, stiff, drive.servo_Nm_per_rad, dt_s / 0.25, start)
+    bristle, micro = _bristles(steps, known, level, stiff, drive.servo_Nm_per_rad, start)
     friction = bristle + drive.viscous_Nms_per_rad * rate
     rotor = drive.ratio**2 * drive.rotor_inertia_kg_m2 * np.gradient(rate, dt_s)
     motor = load_Nm + friction + rotor
@@ -137,13 +138,13 @@ def _slip_level_Nm(drive: Drive, angle_rad: FloatArray, rate: FloatArray, load_N
 
 @njit(cache=True, error_model="numpy")
 def _bristles(
-    steps: FloatArray, known: FloatArray, level: FloatArray, stiff: float, servo: float, leak: float, start: float
+    steps: FloatArray, known: FloatArray, level: FloatArray, stiff: float, servo: float, start: float
 ) -> tuple[FloatArray, FloatArray]:
     """Integrate bristle torque and micro-motion.
 
     In a step the bristles see the prescribed motion plus a give, df = stiff (dx - |dx| f / level). The servo answers
-    the give with `servo`, and takes it back slowly (`leak`). dx follows in closed form from the balance of the
-    increments, servo (dx - step) + known load change + df(dx) - df(step) = 0.
+    the give with `servo`, and takes it back as the joint travels on (GIVE_BACK_rad). dx follows in closed form from the
+    balance of the increments, servo (dx - step) + known load change + df(dx) - df(step) = 0.
     """
     count = steps.size
     force, micro = np.empty(count), np.empty(count)
@@ -152,7 +153,12 @@ def _bristles(
         f = min(max(f, -level[n]), level[n])
         bend = f / level[n]
         step = steps[n]
-        push = servo * step + stiff * (step - abs(step) * bend) - known[n] - servo * leak * give
+        push = (
+            servo * step
+            + stiff * (step - abs(step) * bend)
+            - known[n]
+            - servo * min(abs(step) / GIVE_BACK_rad, 1.0) * give
+        )
         sign = 1.0 if push > 0.0 else -1.0
         move = push / (servo + stiff * (1.0 - sign * bend))
         f += stiff * (move - abs(move) * bend)

@@ -13,6 +13,7 @@ from typing import Final
 
 import numpy as np
 from scipy.linalg import solve_banded
+from scipy.ndimage import gaussian_filter1d
 
 from footcal.records import FloatArray
 from footcal.sim.gait_plan import MotionPlan, Stance, smooth_step
@@ -22,6 +23,8 @@ from footcal.sim.robot import SimRobot
 
 FRICTION: Final = 0.6  # of rubber on the floor
 ARM_m: Final = 0.25  # turns moments into forces where both are weighed
+SLACK: Final = 3e-4  # keeps the least squares solvable where feet cannot give what is needed
+LEAN_s: Final = 0.25  # over which the body leans against a moment that lasts
 SIDEWAYS: Final = 0.3  # least squares: how readily a foot gives side force, over normal force
 CORNERS_Hz: Final = (2.5, 1.5, 1.0, 0.7, 0.5)  # of each round: below it the feet answer, above it the body gives way
 
@@ -50,11 +53,12 @@ def consistent(robot: SimRobot, plan: MotionPlan, corners_Hz: tuple[float, ...] 
         contact, force, surplus = _forces(robot, plan, whole, demand)
         if corner_Hz is None or plan.given_N is not None or bool(np.all(plan.outside_share >= 1.0)):
             break
+        tilting = gaussian_filter1d(surplus[3:5], LEAN_s / dt_s, axis=1)
+        give[:2] += np.stack([-tilting[1], tilting[0]]) / robot.weight_N  # lean against a lasting moment
+        surplus[3:5] -= tilting
         step = _yield(surplus / inertia[:, None], dt_s, corner_Hz)
         give += step
-        demand += (
-            inertia[:, None] * (2.0 * np.pi * corner_Hz) ** 2 * step
-        )  # what the motion leaves, the feet are asked for
+        demand += inertia[:, None] * (2.0 * np.pi * corner_Hz) ** 2 * step  # what the motion leaves, the feet must give
         for i, leg in enumerate(robot.legs):
             rolled[i] = _roll_m(plan.t_s, plan.stances[i], whole.limbs[i].path, leg.foot_radius_m)
     if plan.given_N is None:
@@ -85,7 +89,8 @@ def _forces(
         return contact, plan.given_N, np.zeros_like(need)
     force = _limited(_shared(need + demand, arm, plan.bearing), plan)
     given = np.concatenate([force.sum(axis=0), cross(arm, force).sum(axis=0)])
-    return contact, force, given - need
+    held = smooth_step(plan.outside_share / 0.05)  # a hoist that carries anything also takes what the feet cannot hold
+    return contact, force, (given - need) * (1.0 - held)
 
 
 def _closed(force: FloatArray, surplus: FloatArray, arm: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -99,7 +104,7 @@ def _closed(force: FloatArray, surplus: FloatArray, arm: FloatArray) -> tuple[Fl
 
 
 def _shared(need: FloatArray, arm: FloatArray, bearing: FloatArray) -> FloatArray:
-    """Return the forces, (4, 3, n), with least sum of f^2 / bearing that give the wrench (6, n) as nearly as can be."""
+    """Return the forces, (4, 3, n), with least sum of (f / bearing)^2 that come nearest to the wrench (6, n)."""
     n = need.shape[1]
     give = np.zeros((n, 6, 12))  # wrench of all force components, moments over ARM_m
     x, y, z = np.moveaxis(arm / ARM_m, 1, 0)
@@ -109,10 +114,10 @@ def _shared(need: FloatArray, arm: FloatArray, bearing: FloatArray) -> FloatArra
         give[:, 3, c + 1], give[:, 3, c + 2] = -z[k], y[k]
         give[:, 4, c], give[:, 4, c + 2] = z[k], -x[k]
         give[:, 5, c], give[:, 5, c + 1] = -y[k], x[k]
-    ease = (bearing.T[:, :, None] * np.array([SIDEWAYS, SIDEWAYS, 1.0])).reshape(n, 1, 12)
+    ease = (bearing.T[:, :, None] ** 2 * np.array([SIDEWAYS, SIDEWAYS, 1.0])).reshape(n, 1, 12)
     weighed = give * ease
     normal = weighed @ give.transpose(0, 2, 1)
-    normal[:, range(6), range(6)] += 1e-4
+    normal[:, range(6), range(6)] += SLACK
     wanted = np.concatenate([need[:3], need[3:] / ARM_m]).T[:, :, None]
     force = weighed.transpose(0, 2, 1) @ np.linalg.solve(normal, wanted)
     return np.ascontiguousarray(force[:, :, 0].reshape(n, 4, 3).transpose(1, 2, 0))

@@ -10,8 +10,10 @@ import numpy as np
 from scipy.signal import lfilter
 
 from footcal.records import FloatArray
+from footcal.sim.gait_bench import press, swing
+from footcal.sim.gait_hoist import hang, hoist
 from footcal.sim.gait_plan import MotionPlan, Stance, ramp, slow_noise
-from footcal.sim.gait_steps import TROT, WALK, RUBBER_SINK_m, gait_plan
+from footcal.sim.gait_steps import TROT, WALK, gait_plan, homes_m
 from footcal.sim.robot import SimRobot
 
 Plan = Callable[[SimRobot, FloatArray, np.random.Generator], MotionPlan]
@@ -27,15 +29,6 @@ def walk(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionPl
 def trot(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionPlan:
     """Trot: 1.8 to 2.5 Hz, duty 0.52 to 0.60, diagonal feet together."""
     return gait_plan(robot, TROT, t_s, rng)
-
-
-def homes_m(robot: SimRobot) -> FloatArray:
-    """Return where the balls stand under the hips, (4, 3)."""
-    rows = [
-        (leg.hip_B_m[0], leg.hip_B_m[1] + leg.side * leg.offset_m, leg.foot_radius_m - RUBBER_SINK_m)
-        for leg in robot.legs
-    ]
-    return np.array(rows)
 
 
 def stand(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionPlan:
@@ -66,66 +59,32 @@ def stand(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionP
 
 def push(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionPlan:
     """Stand, and be pushed sideways by 50 N for 0.2 s every few seconds; the body gives way and comes back."""
-    return _pushed(robot, stand(robot, t_s, rng), rng)
+    force, drift = _pushes(robot, t_s, rng, spring_Hz=2.5)
+    plan = stand(robot, t_s, rng)
+    return replace(plan, push_N=force, place_m=plan.place_m + drift)
 
 
 def trot_push(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionPlan:
-    """Trot, and be pushed as in `push`."""
-    return _pushed(robot, trot(robot, t_s, rng), rng)
+    """Trot, and be pushed as in `push`; the feet step after the body."""
+    force, drift = _pushes(robot, t_s, rng, spring_Hz=0.7)
+    return replace(gait_plan(robot, TROT, t_s, rng, drift[:2]), push_N=force)
 
 
-def _pushed(robot: SimRobot, plan: MotionPlan, rng: np.random.Generator) -> MotionPlan:
-    """Return the plan with pushes, and with a body path that answers them as a damped spring of 1.5 Hz."""
-    t_s, force = plan.t_s, np.zeros((3, plan.t_s.size))
+def _pushes(
+    robot: SimRobot, t_s: FloatArray, rng: np.random.Generator, spring_Hz: float
+) -> tuple[FloatArray, FloatArray]:
+    """Return pushes, (3, n), and how the body gives way to them as a damped spring, (3, n)."""
+    force = np.zeros((3, t_s.size))
     start = 2.0
     while start < t_s[-1] - 1.0:
         way = rng.uniform(0.0, 2.0 * np.pi)
         shape = ramp(t_s, start, start + 0.03) * (1.0 - ramp(t_s, start + PUSH_s - 0.03, start + PUSH_s))
         force += PUSH_N * np.array([np.cos(way), np.sin(way), 0.0])[:, None] * shape
         start += rng.uniform(2.5, 4.5)
-    dt_s, rate, damping = float(t_s[1] - t_s[0]), 2.0 * np.pi * 1.5, 0.6
+    dt_s, rate, damping = float(t_s[1] - t_s[0]), 2.0 * np.pi * spring_Hz, 0.7
     over = 1.0 + 2.0 * damping * rate * dt_s + (rate * dt_s) ** 2
     back = [1.0, -(2.0 + 2.0 * damping * rate * dt_s) / over, 1.0 / over]
-    return replace(
-        plan, push_N=force, place_m=plan.place_m + lfilter([dt_s**2 / over], back, force / robot.mass_kg, axis=1)
-    )
-
-
-def hang(robot: SimRobot, t_s: FloatArray, rng: np.random.Generator) -> MotionPlan:
-    """Hang in a hoist with all feet in the air, shaken at 1 to 5 Hz."""
-    n = t_s.size
-    going = ramp(t_s, 0.5, 2.0) * (0.35 + 0.65 * ramp(np.sin(2.0 * np.pi * t_s / 8.0), -0.5, 0.5))
-    place = np.array([0.0, 0.0, robot.stance_m + 0.3])[:, None] + going * np.stack(
-        [_shaken(t_s, rng, 2.5) for _ in range(3)]
-    )
-    rpy = going * np.stack([_shaken(t_s, rng, s) for s in (6.0, 6.0, 3.0)])
-    angles = np.repeat(_posture(robot)[:, :, None], n, axis=2)
-    angles += 0.06 * np.stack([[slow_noise(t_s, rng, 0.1, 0.6) for _ in range(3)] for _ in range(4)])
-    angles += going * np.stack([[_shaken(t_s, rng, 6.0) for _ in range(3)] for _ in range(4)])
-    return MotionPlan(
-        t_s=t_s,
-        place_m=place,
-        rpy_rad=rpy,
-        bearing=np.zeros((4, n)),
-        limit_N=np.zeros((4, n)),
-        impact_N=np.zeros((4, n)),
-        outside_share=np.ones(n),
-        angles_rad=angles,
-    )
-
-
-def _shaken(t_s: FloatArray, rng: np.random.Generator, accel_rms: float) -> FloatArray:
-    """Return a motion at 1 to 5 Hz whose second derivative has about that rms; (n,)."""
-    rates = 2.0 * np.pi * rng.uniform(1.0, 5.0, size=4)
-    phases = rng.uniform(0.0, 2.0 * np.pi, size=4)
-    size = accel_rms / np.sqrt(2.0) / rates**2
-    result: FloatArray = np.sum(size[:, None] * np.sin(rates[:, None] * t_s + phases[:, None]), axis=0)
-    return result
-
-
-def _posture(robot: SimRobot) -> FloatArray:
-    """Return leg angles about as in standing, (4, 3)."""
-    return np.array([[0.0, -0.65 * leg.knee_sign, 1.30 * leg.knee_sign] for leg in robot.legs])
+    return force, lfilter([dt_s**2 / over], back, force / robot.mass_kg, axis=1)
 
 
 MOTIONS: Final[Mapping[str, Plan]] = {
@@ -135,4 +94,7 @@ MOTIONS: Final[Mapping[str, Plan]] = {
     "push": push,
     "trot_push": trot_push,
     "hang": hang,
+    "hoist": hoist,
+    "swing": swing,
+    "press": press,
 }

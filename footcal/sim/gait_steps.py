@@ -41,20 +41,55 @@ class Gait:
     stop_s: tuple[float, float]
     rise_s: float  # in which a foot takes its load
     fall_s: float  # in which it gives it back
-    limit_share: float  # the most one foot carries, over the weight
+    limit_share: float  # the most one foot carries in mid-stance, over the weight
+    bell: float  # by how much of it the limit is lower at both ends of a stance
     sway: float  # how far the body follows the middle of the feet that stand
 
 
 WALK: Final = Gait(
-    (0.78, 0.82), (0.74, 0.76), (0.25, 0.75, 0.0, 0.5), 0.14, 0.045, (0.2, 0.4), (0.006, 0.012), 0.030, 0.080, 0.8, 0.75
+    stride_Hz=(0.78, 0.82),
+    duty=(0.74, 0.76),
+    phases=(0.25, 0.75, 0.0, 0.5),
+    speed_m_per_s=0.14,
+    lift_m=0.045,
+    touchdown_m_per_s=(0.2, 0.4),
+    stop_s=(0.006, 0.012),
+    rise_s=0.030,
+    fall_s=0.080,
+    limit_share=0.8,
+    bell=0.0,
+    sway=0.75,
 )
 TROT: Final = Gait(
-    (1.8, 2.5), (0.52, 0.60), (0.0, 0.5, 0.5, 0.0), 0.35, 0.050, (0.3, 0.6), (0.006, 0.010), 0.030, 0.050, 0.95, 0.0
+    stride_Hz=(1.8, 2.5),
+    duty=(0.52, 0.60),
+    phases=(0.0, 0.5, 0.5, 0.0),
+    speed_m_per_s=0.35,
+    lift_m=0.050,
+    touchdown_m_per_s=(0.3, 0.6),
+    stop_s=(0.006, 0.010),
+    rise_s=0.030,
+    fall_s=0.050,
+    limit_share=0.85,
+    bell=0.45,
+    sway=0.0,
 )
 
 
-def stance_lists(robot: SimRobot, gait: Gait, end_s: float, rng: np.random.Generator) -> tuple[tuple[Stance, ...], ...]:
-    """Return the stances of each leg, the first from long before the start."""
+def homes_m(robot: SimRobot) -> FloatArray:
+    """Return where the balls stand under the hips, (4, 3)."""
+    rows = [
+        (leg.hip_B_m[0], leg.hip_B_m[1] + leg.side * leg.offset_m, leg.foot_radius_m - RUBBER_SINK_m)
+        for leg in robot.legs
+    ]
+    return np.array(rows)
+
+
+def stance_lists(
+    robot: SimRobot, gait: Gait, t_s: FloatArray, drift_m: FloatArray, rng: np.random.Generator
+) -> tuple[tuple[Stance, ...], ...]:
+    """Return the stances of each leg, the first from long before the start; feet step after the body's drift (2, n)."""
+    end_s = float(t_s[-1])
     period_s = 1.0 / rng.uniform(*gait.stride_Hz)
     duty = rng.uniform(*gait.duty)
     starts = (
@@ -69,8 +104,10 @@ def stance_lists(robot: SimRobot, gait: Gait, end_s: float, rng: np.random.Gener
         leave = touch + duty * period_s + 0.008 * period_s * rng.uniform(-1.0, 1.0, starts.size)
         stances = [Stance(-10.0, float(touch[0] - (1.0 - duty) * period_s), home, 0.0, 0.01)]
         for first, last in zip(touch, leave, strict=True):
-            x_m = walked_m(0.5 * (first + last), gait.speed_m_per_s) + home[0] + 0.004 * rng.standard_normal()
-            y_m = home[1] + 0.003 * rng.standard_normal()
+            middle_s = 0.5 * (first + last)
+            aside = [float(np.interp(middle_s, t_s, row)) for row in drift_m]
+            x_m = walked_m(middle_s, gait.speed_m_per_s) + home[0] + aside[0] + 0.004 * rng.standard_normal()
+            y_m = home[1] + aside[1] + 0.003 * rng.standard_normal()
             fast, stop = rng.uniform(*gait.touchdown_m_per_s), rng.uniform(*gait.stop_s)
             stances.append(Stance(float(first), float(last), (float(x_m), float(y_m)), float(fast), float(stop)))
         lists.append(tuple(stances))
@@ -117,6 +154,16 @@ def bearing(t_s: FloatArray, stances: tuple[Stance, ...], rise_s: float, fall_s:
     return total
 
 
+def bell(t_s: FloatArray, stances: tuple[Stance, ...], depth: float) -> FloatArray:
+    """Return 1 in mid-stance, 1 - depth at its ends, between them a half sine; (n,)."""
+    total = np.ones(t_s.size)
+    for stance in stances[1:]:
+        inside = (t_s >= stance.start_s) & (t_s <= stance.end_s)
+        u = (t_s[inside] - stance.start_s) / (stance.end_s - stance.start_s)
+        total[inside] = 1.0 - depth + depth * np.sin(np.pi * u)
+    return total
+
+
 def impacts_N(t_s: FloatArray, stances: tuple[Stance, ...]) -> FloatArray:
     """Return the force that stops a foot at each touchdown, with the dip of the rebound after it; (n,)."""
     total = np.zeros(t_s.size)
@@ -124,18 +171,22 @@ def impacts_N(t_s: FloatArray, stances: tuple[Stance, ...]) -> FloatArray:
         first = int(np.searchsorted(t_s, stance.start_s))
         part = slice(first, int(np.searchsorted(t_s, stance.start_s + 3.0 * stance.stop_s)))
         t = t_s[part]
-        total[part] += FOOT_EFFECTIVE_kg * (stopping(t, stance) - 0.3 * stopping(t - 1.1 * stance.stop_s, stance))
+        total[part] += FOOT_EFFECTIVE_kg * (stopping(t, stance) - 0.15 * stopping(t - 1.1 * stance.stop_s, stance))
     return total
 
 
-def gait_plan(robot: SimRobot, gait: Gait, t_s: FloatArray, rng: np.random.Generator) -> MotionPlan:
-    """Return the plan of a walk or trot that starts from standing."""
-    lists = stance_lists(robot, gait, float(t_s[-1]), rng)
+def gait_plan(
+    robot: SimRobot, gait: Gait, t_s: FloatArray, rng: np.random.Generator, drift_m: FloatArray | None = None
+) -> MotionPlan:
+    """Return the plan of a walk or trot that starts from standing, drifting aside by (2, n) if given."""
+    drift = np.zeros((2, t_s.size)) if drift_m is None else drift_m
+    lists = stance_lists(robot, gait, t_s, drift, rng)
     balls = np.stack(
         [foot_path(t_s, s, leg.foot_radius_m, gait.lift_m) for leg, s in zip(robot.legs, lists, strict=True)]
     )
     bears = np.stack([bearing(t_s, s, gait.rise_s, gait.fall_s) for s in lists])
     place = np.stack([walked_m(t_s, gait.speed_m_per_s), np.zeros(t_s.size), np.full(t_s.size, robot.stance_m)])
+    place[:2] += drift
     if gait.sway:
         middle = np.einsum("kn,kcn->cn", bears, balls[:, :2]) / np.maximum(bears.sum(axis=0), 0.3)
         wide = 0.10 / gait.stride_Hz[0] / (t_s[1] - t_s[0])
@@ -147,7 +198,7 @@ def gait_plan(robot: SimRobot, gait: Gait, t_s: FloatArray, rng: np.random.Gener
         place_m=place,
         rpy_rad=rpy,
         bearing=bears,
-        limit_N=gait.limit_share * robot.weight_N * bears,
+        limit_N=gait.limit_share * robot.weight_N * bears * np.stack([bell(t_s, s, gait.bell) for s in lists]),
         impact_N=np.stack([impacts_N(t_s, s) for s in lists]),
         outside_share=np.zeros(t_s.size),
         balls_m=balls,

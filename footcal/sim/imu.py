@@ -50,8 +50,7 @@ def body_rate(base: BasePath, dt_s: float) -> FloatArray:
     """Return the angular rate in body axes, (3, n), from R' dR/dt."""
     change = np.gradient(base.rotation, dt_s, axis=2)
     spin = np.einsum("jin,jkn->ikn", base.rotation, change)
-    rate: FloatArray = 0.5 * np.stack([spin[2, 1] - spin[1, 2], spin[0, 2] - spin[2, 0], spin[1, 0] - spin[0, 1]])
-    return rate
+    return 0.5 * np.stack([spin[2, 1] - spin[1, 2], spin[0, 2] - spin[2, 0], spin[1, 0] - spin[0, 1]])
 
 
 def specific_force(robot: SimRobot, base: BasePath, dt_s: float) -> FloatArray:
@@ -74,8 +73,10 @@ def quaternion(rotation: FloatArray) -> FloatArray:
     x = (rotation[2, 1] - rotation[1, 2]) / (4.0 * w)
     y = (rotation[0, 2] - rotation[2, 0]) / (4.0 * w)
     z = (rotation[1, 0] - rotation[0, 1]) / (4.0 * w)
-    out: FloatArray = np.stack([w, x, y, z])
-    return out / np.linalg.norm(out, axis=0)
+    parts: list[FloatArray] = [w, x, y, z]
+    out = np.stack(parts)
+    unit: FloatArray = out / np.sqrt(np.sum(out**2, axis=0))
+    return unit
 
 
 def imu_readings(
