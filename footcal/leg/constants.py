@@ -66,14 +66,14 @@ def fill_leg_constants(
 def _fill_chain(leg: Leg, c: Any, lane: int) -> None:
     c["leg_joints"][..., lane] = len(leg.joints)
     for j in range(c["leg_mass"].shape[-2]):
-        c["leg_R0"][..., j, :, lane] = np.eye(3).ravel()
+        c["leg_R0"][..., :, j, lane] = np.eye(3).ravel()
     for j, joint in enumerate(leg.joints):
-        c["leg_R0"][..., j, :, lane] = from_rpy(joint.rpy_rad).ravel()
-        c["leg_p0"][..., j, :, lane] = joint.xyz_m
-        c["leg_axis"][..., j, :, lane] = _unit(joint.axis)
+        c["leg_R0"][..., :, j, lane] = from_rpy(joint.rpy_rad).ravel()
+        c["leg_p0"][..., :, j, lane] = joint.xyz_m
+        c["leg_axis"][..., :, j, lane] = _unit(joint.axis)
         c["leg_mass"][..., j, lane] = joint.mass_kg
-        c["leg_com"][..., j, :, lane] = joint.com_m
-        c["leg_inertia"][..., j, :, lane] = joint.inertia_kg_m2
+        c["leg_com"][..., :, j, lane] = joint.com_m
+        c["leg_inertia"][..., :, j, lane] = joint.inertia_kg_m2
         c["leg_enc_sign"][..., j, lane] = joint.encoder_sign
         c["leg_enc_off"][..., j, lane] = joint.encoder_offset_rad
 

@@ -17,22 +17,7 @@ from footcal.leg.motion import STILL_AFTER_S
 
 
 @njit(error_model="numpy")
-def drive_step(inp: Any, s: Any, c: Any) -> None:
-    """Write tau_meas_Nm, tau_new, tau_noise_Nm, tau_drive_Nm, fric_sd_Nm, fric_tau_s, tau_lag_s and motor_age_s."""
-    read_currents(inp, s, c)
-    if c.leg_varies[0] != 0:
-        varying_ratio(s, c)
-    else:
-        fixed_ratio(s, c)
-    load_torque(s, c)
-    grip(s, c)
-    actuator_torques(s, c)
-    joint_torques(s, c)
-    freshness(s, c)
-
-
-@njit(error_model="numpy")
-def read_currents(inp: Any, s: Any, c: Any) -> None:
+def read_currents(inp: Any, s: Any) -> None:
     """Take new currents and motor temperatures, count the age of the others."""
     for j in range(s.leg_q.shape[0]):
         for k in range(s.leg_q.shape[1]):
@@ -49,35 +34,26 @@ def read_currents(inp: Any, s: Any, c: Any) -> None:
 
 
 @njit(error_model="numpy")
-def fixed_ratio(s: Any, c: Any) -> None:
-    """Ratio of gears and belts."""
-    for j in range(s.leg_q.shape[0]):
-        for k in range(s.leg_q.shape[1]):
-            s.leg_ratio[j, k] = c.leg_ratio_0[j, 0, k]
-            s.leg_dratio[j, k] = 0.0
-
-
-@njit(error_model="numpy")
-def varying_ratio(s: Any, c: Any) -> None:
+def varying_ratio(s: Any) -> None:
     """Ratio and its slope at the actuator angle: cubic Hermite between nodes, end values beyond them."""
-    nodes = c.leg_ratio_0.shape[1]
+    nodes = s.leg_ratio_0.shape[1]
     for j in range(s.leg_q.shape[0]):
         for k in range(s.leg_q.shape[1]):
-            x = (s.leg_phi[j, k] - c.leg_node_0[j, k]) / c.leg_node_step[j, k]
+            x = (s.leg_phi[j, k] - s.leg_node_0[j, k]) / s.leg_node_step[j, k]
             inside = x > 0.0 and x < nodes - 1.0
             x = min(max(x, 0.0), nodes - 1.0)
             i = min(int(x), nodes - 2)
             u = x - i
-            y0, y1 = c.leg_ratio_0[j, i, k], c.leg_ratio_0[j, i + 1, k]
-            d0, d1 = c.leg_ratio_1[j, i, k], c.leg_ratio_1[j, i + 1, k]
+            y0, y1 = s.leg_ratio_0[j, i, k], s.leg_ratio_0[j, i + 1, k]
+            d0, d1 = s.leg_ratio_1[j, i, k], s.leg_ratio_1[j, i + 1, k]
             c2 = 3.0 * (y1 - y0) - 2.0 * d0 - d1
             c3 = d0 + d1 - 2.0 * (y1 - y0)
             s.leg_ratio[j, k] = y0 + u * (d0 + u * (c2 + u * c3))
-            s.leg_dratio[j, k] = (d0 + u * (2.0 * c2 + 3.0 * u * c3)) / c.leg_node_step[j, k] if inside else 0.0
+            s.leg_dratio[j, k] = (d0 + u * (2.0 * c2 + 3.0 * u * c3)) / s.leg_node_step[j, k] if inside else 0.0
 
 
 @njit(error_model="numpy")
-def load_torque(s: Any, c: Any) -> None:
+def load_torque(s: Any) -> None:
     """tau_L = D - J.T F with the force of the last tick, seen by the actuators: M^-T tau_L."""
     for k in range(s.leg_q.shape[1]):
         for j in range(s.leg_q.shape[0]):
@@ -90,51 +66,40 @@ def load_torque(s: Any, c: Any) -> None:
         for j in range(s.leg_q.shape[0]):
             load = 0.0
             for i in range(s.leg_q.shape[0]):
-                load += c.leg_MinvT[j, i, k] * s.leg_act[i, k]
+                load += s.leg_MinvT[j, i, k] * s.leg_act[i, k]
             s.leg_load[j, k] = load
 
 
 @njit(error_model="numpy")
-def grip(s: Any, c: Any) -> None:
-    """The two curves of speed, apart from the rest: tanh(dq/v_s) by one exponential, and Stribeck's bump."""
-    for j in range(s.leg_q.shape[0]):
-        for k in range(s.leg_q.shape[1]):
-            e = np.exp(-2.0 * abs(s.leg_dphi[j, k]) * c.leg_unstick[0])
-            s.leg_grip[j, k] = (1.0 - e) / (1.0 + e)
-            x = s.leg_dphi[j, k] * c.leg_stribeck[j, k]
-            s.leg_bump[j, k] = np.exp(-x * x)
-
-
-@njit(error_model="numpy")
-def actuator_torques(s: Any, c: Any) -> None:
+def actuator_torques(s: Any) -> None:
     """Per actuator: measured torque (leg_act), friction and rotor (leg_act2), variance of the friction error (leg_act3)."""
     for k in range(s.leg_q.shape[1]):
         for j in range(s.leg_q.shape[0]):
             temp = s.leg_motor_C[j, k]
-            warm = temp - c.leg_kt_C[j, k] if temp == temp else 0.0  # noqa: PLR0124
-            arm = s.leg_ratio[j, k] * c.leg_kt[j, k] * (1.0 + c.leg_kt_per_K[j, k] * warm) * c.leg_enc_sign[j, k]
-            measured = arm * (s.leg_current_A[j, k] - c.leg_i0[j, k])
+            warm = temp - s.leg_kt_C[j, k] if temp == temp else 0.0  # noqa: PLR0124
+            arm = s.leg_ratio[j, k] * s.leg_kt[j, k] * (1.0 + s.leg_kt_per_K[j, k] * warm) * s.leg_enc_sign[j, k]
+            measured = arm * (s.leg_current_A[j, k] - s.leg_i0[j, k])
             dphi = s.leg_dphi[j, k]
             limit = (
-                c.leg_coulomb[j, k] + c.leg_extra[j, k] * s.leg_bump[j, k] + c.leg_share[j, k] * abs(s.leg_load[j, k])
+                s.leg_coulomb[j, k] + s.leg_extra[j, k] * s.leg_bump[j, k] + s.leg_share[j, k] * abs(s.leg_load[j, k])
             )
             moving = s.leg_grip[j, k]
             signed = moving if dphi >= 0.0 else -moving
             turned = s.leg_ratio[j, k] * s.leg_ddphi[j, k] + s.leg_dratio[j, k] * dphi * dphi
-            rotor = s.leg_ratio[j, k] * c.leg_rotor[j, k] * turned
-            stuck_sd = c.leg_stuck_sd[0] * limit
-            moving_sd = c.leg_moving_sd[0] * limit
-            kt_sd = c.leg_kt_u[j, k] * measured
+            rotor = s.leg_ratio[j, k] * s.leg_rotor[j, k] * turned
+            stuck_sd = s.leg_stuck_sd[0] * limit
+            moving_sd = s.leg_moving_sd[0] * limit
+            kt_sd = s.leg_kt_u[j, k] * measured
             s.leg_act[j, k] = measured
-            s.leg_act2[j, k] = signed * limit + c.leg_viscous[j, k] * dphi + rotor
+            s.leg_act2[j, k] = signed * limit + s.leg_viscous[j, k] * dphi + rotor
             s.leg_act3[j, k] = (
                 stuck_sd * stuck_sd + (moving_sd * moving_sd - stuck_sd * stuck_sd) * moving * moving + kt_sd * kt_sd
             )
-            s.leg_load[j, k] = arm * c.leg_i_sd[j, k]
+            s.leg_load[j, k] = arm * s.leg_i_sd[j, k]
 
 
 @njit(error_model="numpy")
-def joint_torques(s: Any, c: Any) -> None:
+def joint_torques(s: Any) -> None:
     """Turn actuator torques into joint torques by M.T; variances by the squares."""
     for k in range(s.leg_q.shape[1]):
         for j in range(s.leg_q.shape[0]):
@@ -143,7 +108,7 @@ def joint_torques(s: Any, c: Any) -> None:
             var = 0.0
             white = 0.0
             for i in range(s.leg_q.shape[0]):
-                m = c.leg_M[i, j, k]
+                m = s.leg_M[i, j, k]
                 measured += m * s.leg_act[i, k]
                 known += m * s.leg_act2[i, k]
                 var += m * m * s.leg_act3[i, k]
@@ -152,29 +117,29 @@ def joint_torques(s: Any, c: Any) -> None:
             s.tau_drive_Nm[j, k] = known
             s.fric_sd_Nm[j, k] = np.sqrt(var)
             s.tau_noise_Nm[j, k] = np.sqrt(white)
-            s.fric_tau_s[j, k] = c.leg_fric_tau_s[0]
-            s.tau_lag_s[j, k] = c.leg_lag_s[j, k]
+            s.fric_tau_s[j, k] = s.leg_fric_tau_s[0]
+            s.tau_lag_s[j, k] = s.leg_lag_s[j, k]
 
 
 @njit(error_model="numpy")
-def freshness(s: Any, c: Any) -> None:
+def freshness(s: Any) -> None:
     """Mark joint torques that rest on a new current and on angles that are not stale; age of the oldest reading used."""
     for k in range(s.leg_q.shape[1]):
         oldest = 0.0
         posture = 0.0
         for j in range(s.leg_q.shape[0]):
-            if j < c.leg_joints[k]:
+            if j < s.leg_joints[k]:
                 posture = max(posture, s.leg_phi_age_s[j, k])
                 oldest = max(oldest, s.leg_phi_age_s[j, k])
-                if c.leg_motor[j, k] != 0:
+                if s.leg_motor[j, k] != 0:
                     oldest = max(oldest, s.leg_current_age_s[j, k])
         s.motor_age_s[k] = oldest
         for j in range(s.leg_q.shape[0]):
             any_new = 0
-            complete = posture <= STILL_AFTER_S and j < c.leg_joints[k]
+            complete = posture <= STILL_AFTER_S and j < s.leg_joints[k]
             for i in range(s.leg_q.shape[0]):
-                if c.leg_M[i, j, k] != 0.0:
+                if s.leg_M[i, j, k] != 0.0:
                     any_new |= s.leg_current_new[i, k]
-                    if c.leg_motor[i, k] == 0 or s.leg_current_age_s[i, k] > STILL_AFTER_S:
+                    if s.leg_motor[i, k] == 0 or s.leg_current_age_s[i, k] > STILL_AFTER_S:
                         complete = False
             s.tau_new[j, k] = any_new if complete else 0

@@ -12,60 +12,42 @@ from numba import njit
 
 
 @njit(error_model="numpy")
-def dynamics_step(s: Any, c: Any) -> None:
-    """Write tau_rigid_Nm, what the joints must give with no contact, and axial_inertia_N."""
-    last = s.leg_q.shape[0] - 1
-    first_link(s)
-    for j in range(1, s.leg_q.shape[0]):
-        next_link(s, j)
-    for j in range(s.leg_q.shape[0]):
-        link_wrench(s, c, j)
-    below_sensor(s, c, last)
-    for i in range(last):
-        hand_back(s, last - 1 - i)
-    for j in range(s.leg_q.shape[0]):
-        for k in range(s.leg_q.shape[1]):
-            s.tau_rigid_Nm[j, k] = (
-                s.leg_z[j, 0, k] * s.leg_N[j, 0, k]
-                + s.leg_z[j, 1, k] * s.leg_N[j, 1, k]
-                + s.leg_z[j, 2, k] * s.leg_N[j, 2, k]
-            )
-
-
-@njit(error_model="numpy")
 def first_link(s: Any) -> None:
     """Motion of link 0 from that of the body."""
     wx, wy, wz = s.leg_w[0], s.leg_w[1], s.leg_w[2]
     ux, uy, uz = s.leg_dw[0], s.leg_dw[1], s.leg_dw[2]
+    fx, fy, fz = s.leg_f[0], s.leg_f[1], s.leg_f[2]
     for k in range(s.leg_q.shape[1]):
-        carry(s, 0, k, wx, wy, wz, ux, uy, uz, s.leg_p[0, 0, k], s.leg_p[0, 1, k], s.leg_p[0, 2, k])
-        s.leg_la[0, 0, k] += s.leg_f[0]
-        s.leg_la[0, 1, k] += s.leg_f[1]
-        s.leg_la[0, 2, k] += s.leg_f[2]
+        carry(s, 0, k, wx, wy, wz, ux, uy, uz, s.leg_p[0, 0, k], s.leg_p[1, 0, k], s.leg_p[2, 0, k])
+        s.leg_la[0, 0, k] += fx
+        s.leg_la[1, 0, k] += fy
+        s.leg_la[2, 0, k] += fz
 
 
 @njit(error_model="numpy")
 def next_link(s: Any, j: int) -> None:
     """Motion of link j from that of the link before."""
+    if j < 1 or j > 5:  # never; see chain.next_joint
+        return
     for k in range(s.leg_q.shape[1]):
         i = j - 1
         carry(
             s,
             j,
             k,
-            s.leg_av[i, 0, k],
-            s.leg_av[i, 1, k],
-            s.leg_av[i, 2, k],
-            s.leg_aa[i, 0, k],
-            s.leg_aa[i, 1, k],
-            s.leg_aa[i, 2, k],
-            s.leg_p[j, 0, k] - s.leg_p[i, 0, k],
-            s.leg_p[j, 1, k] - s.leg_p[i, 1, k],
-            s.leg_p[j, 2, k] - s.leg_p[i, 2, k],
+            s.leg_av[0, i, k],
+            s.leg_av[1, i, k],
+            s.leg_av[2, i, k],
+            s.leg_aa[0, i, k],
+            s.leg_aa[1, i, k],
+            s.leg_aa[2, i, k],
+            s.leg_p[0, j, k] - s.leg_p[0, i, k],
+            s.leg_p[1, j, k] - s.leg_p[1, i, k],
+            s.leg_p[2, j, k] - s.leg_p[2, i, k],
         )
-        s.leg_la[j, 0, k] += s.leg_la[i, 0, k]
-        s.leg_la[j, 1, k] += s.leg_la[i, 1, k]
-        s.leg_la[j, 2, k] += s.leg_la[i, 2, k]
+        s.leg_la[0, j, k] += s.leg_la[0, i, k]
+        s.leg_la[1, j, k] += s.leg_la[1, i, k]
+        s.leg_la[2, j, k] += s.leg_la[2, i, k]
 
 
 @njit(error_model="numpy")
@@ -85,80 +67,95 @@ def carry(
 ) -> None:
     """Rate w and acceleration u of the part before, arm r to joint j: rate and acceleration of link j; u x r + w x (w x r)."""
     vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx
-    s.leg_la[j, 0, k] = uy * rz - uz * ry + wy * vz - wz * vy
-    s.leg_la[j, 1, k] = uz * rx - ux * rz + wz * vx - wx * vz
-    s.leg_la[j, 2, k] = ux * ry - uy * rx + wx * vy - wy * vx
-    zx, zy, zz = s.leg_z[j, 0, k], s.leg_z[j, 1, k], s.leg_z[j, 2, k]
+    s.leg_la[0, j, k] = uy * rz - uz * ry + wy * vz - wz * vy
+    s.leg_la[1, j, k] = uz * rx - ux * rz + wz * vx - wx * vz
+    s.leg_la[2, j, k] = ux * ry - uy * rx + wx * vy - wy * vx
+    zx, zy, zz = s.leg_z[0, j, k], s.leg_z[1, j, k], s.leg_z[2, j, k]
     dq, ddq = s.leg_dq[j, k], s.leg_ddq[j, k]
-    s.leg_av[j, 0, k] = wx + zx * dq
-    s.leg_av[j, 1, k] = wy + zy * dq
-    s.leg_av[j, 2, k] = wz + zz * dq
-    s.leg_aa[j, 0, k] = ux + zx * ddq + (wy * zz - wz * zy) * dq
-    s.leg_aa[j, 1, k] = uy + zy * ddq + (wz * zx - wx * zz) * dq
-    s.leg_aa[j, 2, k] = uz + zz * ddq + (wx * zy - wy * zx) * dq
+    s.leg_av[0, j, k] = wx + zx * dq
+    s.leg_av[1, j, k] = wy + zy * dq
+    s.leg_av[2, j, k] = wz + zz * dq
+    s.leg_aa[0, j, k] = ux + zx * ddq + (wy * zz - wz * zy) * dq
+    s.leg_aa[1, j, k] = uy + zy * ddq + (wz * zx - wx * zz) * dq
+    s.leg_aa[2, j, k] = uz + zz * ddq + (wx * zy - wy * zx) * dq
 
 
 @njit(error_model="numpy")
-def link_wrench(s: Any, c: Any, j: int) -> None:
+def link_wrench(s: Any, j: int) -> None:
     """Force m a_c and moment about the joint origin that move link j: I u + w x (I w) + r x m a_c."""
     for k in range(s.leg_q.shape[1]):
-        R0, R1, R2 = s.leg_R[j, 0, k], s.leg_R[j, 1, k], s.leg_R[j, 2, k]
-        R3, R4, R5 = s.leg_R[j, 3, k], s.leg_R[j, 4, k], s.leg_R[j, 5, k]
-        R6, R7, R8 = s.leg_R[j, 6, k], s.leg_R[j, 7, k], s.leg_R[j, 8, k]
-        cx, cy, cz = c.leg_com[j, 0, k], c.leg_com[j, 1, k], c.leg_com[j, 2, k]
+        R0, R1, R2 = s.leg_R[0, j, k], s.leg_R[1, j, k], s.leg_R[2, j, k]
+        R3, R4, R5 = s.leg_R[3, j, k], s.leg_R[4, j, k], s.leg_R[5, j, k]
+        R6, R7, R8 = s.leg_R[6, j, k], s.leg_R[7, j, k], s.leg_R[8, j, k]
+        cx, cy, cz = s.leg_com[0, j, k], s.leg_com[1, j, k], s.leg_com[2, j, k]
         rx, ry, rz = R0 * cx + R1 * cy + R2 * cz, R3 * cx + R4 * cy + R5 * cz, R6 * cx + R7 * cy + R8 * cz
-        wx, wy, wz = s.leg_av[j, 0, k], s.leg_av[j, 1, k], s.leg_av[j, 2, k]
-        ux, uy, uz = s.leg_aa[j, 0, k], s.leg_aa[j, 1, k], s.leg_aa[j, 2, k]
+        wx, wy, wz = s.leg_av[0, j, k], s.leg_av[1, j, k], s.leg_av[2, j, k]
+        ux, uy, uz = s.leg_aa[0, j, k], s.leg_aa[1, j, k], s.leg_aa[2, j, k]
         vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx
-        m = c.leg_mass[j, k]
-        fx = m * (s.leg_la[j, 0, k] + uy * rz - uz * ry + wy * vz - wz * vy)
-        fy = m * (s.leg_la[j, 1, k] + uz * rx - ux * rz + wz * vx - wx * vz)
-        fz = m * (s.leg_la[j, 2, k] + ux * ry - uy * rx + wx * vy - wy * vx)
+        m = s.leg_mass[j, k]
+        fx = m * (s.leg_la[0, j, k] + uy * rz - uz * ry + wy * vz - wz * vy)
+        fy = m * (s.leg_la[1, j, k] + uz * rx - ux * rz + wz * vx - wx * vz)
+        fz = m * (s.leg_la[2, j, k] + ux * ry - uy * rx + wx * vy - wy * vx)
         ox, oy, oz = R0 * wx + R3 * wy + R6 * wz, R1 * wx + R4 * wy + R7 * wz, R2 * wx + R5 * wy + R8 * wz
         ax, ay, az = R0 * ux + R3 * uy + R6 * uz, R1 * ux + R4 * uy + R7 * uz, R2 * ux + R5 * uy + R8 * uz
-        xx, yy, zz = c.leg_inertia[j, 0, k], c.leg_inertia[j, 1, k], c.leg_inertia[j, 2, k]
-        xy, xz, yz = c.leg_inertia[j, 3, k], c.leg_inertia[j, 4, k], c.leg_inertia[j, 5, k]
+        xx, yy, zz = s.leg_inertia[0, j, k], s.leg_inertia[1, j, k], s.leg_inertia[2, j, k]
+        xy, xz, yz = s.leg_inertia[3, j, k], s.leg_inertia[4, j, k], s.leg_inertia[5, j, k]
         hx, hy, hz = xx * ox + xy * oy + xz * oz, xy * ox + yy * oy + yz * oz, xz * ox + yz * oy + zz * oz
         nx = xx * ax + xy * ay + xz * az + oy * hz - oz * hy
         ny = xy * ax + yy * ay + yz * az + oz * hx - ox * hz
         nz = xz * ax + yz * ay + zz * az + ox * hy - oy * hx
-        s.leg_F[j, 0, k] = fx
-        s.leg_F[j, 1, k] = fy
-        s.leg_F[j, 2, k] = fz
-        s.leg_N[j, 0, k] = R0 * nx + R1 * ny + R2 * nz + ry * fz - rz * fy
-        s.leg_N[j, 1, k] = R3 * nx + R4 * ny + R5 * nz + rz * fx - rx * fz
-        s.leg_N[j, 2, k] = R6 * nx + R7 * ny + R8 * nz + rx * fy - ry * fx
+        s.leg_F[0, j, k] = fx
+        s.leg_F[1, j, k] = fy
+        s.leg_F[2, j, k] = fz
+        s.leg_N[0, j, k] = R0 * nx + R1 * ny + R2 * nz + ry * fz - rz * fy
+        s.leg_N[1, j, k] = R3 * nx + R4 * ny + R5 * nz + rz * fx - rx * fz
+        s.leg_N[2, j, k] = R6 * nx + R7 * ny + R8 * nz + rx * fy - ry * fx
 
 
 @njit(error_model="numpy")
 def hand_back(s: Any, j: int) -> None:
     """Add to link j what link j + 1 asks of it, before the torques are read off."""
+    if j < 0 or j > 4:  # never; see chain.next_joint
+        return
     for k in range(s.leg_q.shape[1]):
         i = j + 1
-        fx, fy, fz = s.leg_F[i, 0, k], s.leg_F[i, 1, k], s.leg_F[i, 2, k]
-        rx = s.leg_p[i, 0, k] - s.leg_p[j, 0, k]
-        ry = s.leg_p[i, 1, k] - s.leg_p[j, 1, k]
-        rz = s.leg_p[i, 2, k] - s.leg_p[j, 2, k]
-        s.leg_F[j, 0, k] += fx
-        s.leg_F[j, 1, k] += fy
-        s.leg_F[j, 2, k] += fz
-        s.leg_N[j, 0, k] += s.leg_N[i, 0, k] + ry * fz - rz * fy
-        s.leg_N[j, 1, k] += s.leg_N[i, 1, k] + rz * fx - rx * fz
-        s.leg_N[j, 2, k] += s.leg_N[i, 2, k] + rx * fy - ry * fx
+        fx, fy, fz = s.leg_F[0, i, k], s.leg_F[1, i, k], s.leg_F[2, i, k]
+        rx = s.leg_p[0, i, k] - s.leg_p[0, j, k]
+        ry = s.leg_p[1, i, k] - s.leg_p[1, j, k]
+        rz = s.leg_p[2, i, k] - s.leg_p[2, j, k]
+        s.leg_F[0, j, k] += fx
+        s.leg_F[1, j, k] += fy
+        s.leg_F[2, j, k] += fz
+        s.leg_N[0, j, k] += s.leg_N[0, i, k] + ry * fz - rz * fy
+        s.leg_N[1, j, k] += s.leg_N[1, i, k] + rz * fx - rx * fz
+        s.leg_N[2, j, k] += s.leg_N[2, i, k] + rx * fy - ry * fx
 
 
 @njit(error_model="numpy")
-def below_sensor(s: Any, c: Any, j: int) -> None:
+def below_sensor(s: Any) -> None:
     """h.m_d(g - a_c): what the mass below the sensor takes from the ground's push before the sensor feels it."""
+    j = s.leg_q.shape[0] - 1
     for k in range(s.leg_q.shape[1]):
-        cx, cy, cz = c.leg_distal[0, k], c.leg_distal[1, k], c.leg_distal[2, k]
-        rx = s.leg_R[j, 0, k] * cx + s.leg_R[j, 1, k] * cy + s.leg_R[j, 2, k] * cz
-        ry = s.leg_R[j, 3, k] * cx + s.leg_R[j, 4, k] * cy + s.leg_R[j, 5, k] * cz
-        rz = s.leg_R[j, 6, k] * cx + s.leg_R[j, 7, k] * cy + s.leg_R[j, 8, k] * cz
-        wx, wy, wz = s.leg_av[j, 0, k], s.leg_av[j, 1, k], s.leg_av[j, 2, k]
-        ux, uy, uz = s.leg_aa[j, 0, k], s.leg_aa[j, 1, k], s.leg_aa[j, 2, k]
+        cx, cy, cz = s.leg_distal[0, k], s.leg_distal[1, k], s.leg_distal[2, k]
+        rx = s.leg_R[0, j, k] * cx + s.leg_R[1, j, k] * cy + s.leg_R[2, j, k] * cz
+        ry = s.leg_R[3, j, k] * cx + s.leg_R[4, j, k] * cy + s.leg_R[5, j, k] * cz
+        rz = s.leg_R[6, j, k] * cx + s.leg_R[7, j, k] * cy + s.leg_R[8, j, k] * cz
+        wx, wy, wz = s.leg_av[0, j, k], s.leg_av[1, j, k], s.leg_av[2, j, k]
+        ux, uy, uz = s.leg_aa[0, j, k], s.leg_aa[1, j, k], s.leg_aa[2, j, k]
         vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx
-        ax = s.leg_la[j, 0, k] + uy * rz - uz * ry + wy * vz - wz * vy
-        ay = s.leg_la[j, 1, k] + uz * rx - ux * rz + wz * vx - wx * vz
-        az = s.leg_la[j, 2, k] + ux * ry - uy * rx + wx * vy - wy * vx
-        s.axial_inertia_N[k] = -c.leg_distal_kg[k] * (s.axis_B[0, k] * ax + s.axis_B[1, k] * ay + s.axis_B[2, k] * az)
+        ax = s.leg_la[0, j, k] + uy * rz - uz * ry + wy * vz - wz * vy
+        ay = s.leg_la[1, j, k] + uz * rx - ux * rz + wz * vx - wx * vz
+        az = s.leg_la[2, j, k] + ux * ry - uy * rx + wx * vy - wy * vx
+        s.axial_inertia_N[k] = -s.leg_distal_kg[k] * (s.axis_B[0, k] * ax + s.axis_B[1, k] * ay + s.axis_B[2, k] * az)
+
+
+@njit(error_model="numpy")
+def rigid_torques(s: Any) -> None:
+    """The part of each moment that its joint's motor carries: z_j . N_j."""
+    for k in range(s.leg_q.shape[1]):
+        for j in range(s.leg_q.shape[0]):
+            s.tau_rigid_Nm[j, k] = (
+                s.leg_z[0, j, k] * s.leg_N[0, j, k]
+                + s.leg_z[1, j, k] * s.leg_N[1, j, k]
+                + s.leg_z[2, j, k] * s.leg_N[2, j, k]
+            )

@@ -16,13 +16,13 @@ STILL_AFTER_S = 0.05  # a joint not heard for longer is taken to stand still
 
 
 @njit(error_model="numpy")
-def read_joints(inp: Any, s: Any, c: Any) -> None:
+def read_joints(inp: Any, s: Any) -> None:
     """Take new encoder readings: actuator angle, speed and acceleration; count the age of the others.
 
     A reading without a speed gets one from the angle. The filter starts afresh after a reset or a long silence.
     """
     dt = s.dt_s[0]
-    tau = c.leg_dq_tau_s[0]
+    tau = s.leg_dq_tau_s[0]
     usual = np.exp(-dt / tau)
     for j in range(s.leg_phi.shape[0]):
         for k in range(s.leg_phi.shape[1]):
@@ -31,8 +31,8 @@ def read_joints(inp: Any, s: Any, c: Any) -> None:
             reading = inp.q_rad[j, k]
             s.leg_gap_s[j, k] = 0.0
             if reading == reading:  # noqa: PLR0124
-                phi = c.leg_enc_sign[j, k] * (reading - c.leg_enc_off[j, k])
-                speed = c.leg_enc_sign[j, k] * inp.dq_rad_per_s[j, k]
+                phi = s.leg_enc_sign[j, k] * (reading - s.leg_enc_off[j, k])
+                speed = s.leg_enc_sign[j, k] * inp.dq_rad_per_s[j, k]
                 if s.reset[0] != 0 or not (age > 0.0 and age <= STILL_AFTER_S):
                     s.leg_on[j, k] = 0
                 if not speed == speed:  # noqa: PLR0124, SIM201
@@ -48,9 +48,9 @@ def read_joints(inp: Any, s: Any, c: Any) -> None:
 
 
 @njit(error_model="numpy")
-def slope_joints(s: Any, c: Any) -> None:
+def slope_joints(s: Any) -> None:
     """Advance the derivative filter of every joint that was read."""
-    tau = c.leg_dq_tau_s[0]
+    tau = s.leg_dq_tau_s[0]
     for j in range(s.leg_phi.shape[0]):
         for k in range(s.leg_phi.shape[1]):
             if s.leg_gap_s[j, k] > 0.0:
@@ -70,12 +70,12 @@ def slope_joints(s: Any, c: Any) -> None:
                     s.leg_lp[j, k] = lp
                     s.leg_slope[j, k] = slope
                     s.leg_slope_lp[j, k] = late
-                    s.leg_ddphi[j, k] = slope + c.leg_lead[0] * (slope - late)
+                    s.leg_ddphi[j, k] = slope + s.leg_lead[0] * (slope - late)
                 s.leg_dphi[j, k] = v
 
 
 @njit(error_model="numpy")
-def joint_motion(s: Any, c: Any) -> None:
+def joint_motion(s: Any) -> None:
     """Turn actuator angles, speeds and accelerations into those of the joints: q = M^-1 phi."""
     for k in range(s.leg_q.shape[1]):
         for j in range(s.leg_q.shape[0]):
@@ -83,21 +83,17 @@ def joint_motion(s: Any, c: Any) -> None:
             dq = 0.0
             ddq = 0.0
             for i in range(s.leg_q.shape[0]):
-                m = c.leg_Minv[j, i, k]
+                m = s.leg_Minv[j, i, k]
                 q += m * s.leg_phi[i, k]
                 dq += m * s.leg_dphi[i, k]
                 ddq += m * s.leg_ddphi[i, k]
             s.leg_q[j, k] = q
             s.leg_dq[j, k] = dq
             s.leg_ddq[j, k] = ddq
-    for j in range(s.leg_q.shape[0]):
-        for k in range(s.leg_q.shape[1]):
-            s.leg_sin[j, k] = np.sin(s.leg_q[j, k])
-            s.leg_cos[j, k] = np.cos(s.leg_q[j, k])
 
 
 @njit(error_model="numpy")
-def read_base(inp: Any, gravity: Any, s: Any, c: Any) -> None:
+def read_base(inp: Any, gravity: Any, s: Any) -> None:
     """Take the inertial unit: angular rate, angular acceleration, and specific force moved to the body origin.
 
     f at the origin = f at the unit - dw x r - w x (w x r). A unit that gives nothing leaves a body at rest: level, or as
@@ -106,10 +102,10 @@ def read_base(inp: Any, gravity: Any, s: Any, c: Any) -> None:
     dt = s.dt_s[0]
     s.leg_gyro_age_s[0] += dt
     s.leg_accel_age_s[0] += dt
-    R = c.leg_imu_R
+    R = s.leg_imu_R
     gx, gy, gz = inp.gyro_rad_per_s[0], inp.gyro_rad_per_s[1], inp.gyro_rad_per_s[2]
     if gx + gy + gz == gx + gy + gz:  # noqa: PLR0124
-        _slope_base(s.leg_gyro_age_s[0], gx, gy, gz, s, c)
+        _slope_base(s.leg_gyro_age_s[0], gx, gy, gz, s)
         s.leg_gyro_age_s[0] = 0.0
     elif s.leg_gyro_age_s[0] > STILL_AFTER_S:
         for i in range(3):
@@ -127,17 +123,17 @@ def read_base(inp: Any, gravity: Any, s: Any, c: Any) -> None:
     if s.leg_accel_age_s[0] > STILL_AFTER_S:
         _force_at_rest(gravity, s)
     else:
-        _move_to_origin(s, c)
+        _move_to_origin(s)
 
 
 @njit(error_model="numpy")
-def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any, c: Any) -> None:
-    tau = c.leg_w_tau_s[0]
+def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any) -> None:
+    tau = s.leg_w_tau_s[0]
     a = np.exp(-gap / tau)
     share = (1.0 - a) * tau / gap
     starts = s.reset[0] != 0 or s.leg_gyro_on[0] == 0 or not (gap > 0.0 and gap <= STILL_AFTER_S)
     for i in range(3):
-        w = c.leg_imu_R[i, 0] * gx + c.leg_imu_R[i, 1] * gy + c.leg_imu_R[i, 2] * gz
+        w = s.leg_imu_R[i, 0] * gx + s.leg_imu_R[i, 1] * gy + s.leg_imu_R[i, 2] * gz
         if starts:
             s.leg_w_lp[i] = w
             s.leg_w_slope[i] = 0.0
@@ -150,14 +146,14 @@ def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any, c: Any) -> 
             s.leg_w_lp[i] = lp
             s.leg_w_slope[i] = slope
             s.leg_w_slope_lp[i] = late
-            s.leg_dw[i] = slope + c.leg_lead[0] * (slope - late)
+            s.leg_dw[i] = slope + s.leg_lead[0] * (slope - late)
         s.leg_w[i] = w
     s.leg_gyro_on[0] = 1
 
 
 @njit(error_model="numpy")
-def _move_to_origin(s: Any, c: Any) -> None:
-    rx, ry, rz = c.leg_imu_p[0], c.leg_imu_p[1], c.leg_imu_p[2]
+def _move_to_origin(s: Any) -> None:
+    rx, ry, rz = s.leg_imu_p[0], s.leg_imu_p[1], s.leg_imu_p[2]
     wx, wy, wz = s.leg_w[0], s.leg_w[1], s.leg_w[2]
     ux, uy, uz = s.leg_dw[0], s.leg_dw[1], s.leg_dw[2]
     vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx

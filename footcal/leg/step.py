@@ -1,4 +1,8 @@
-"""Compiled: the leg part of one tick, all legs at once."""
+"""Compiled: the leg part of one tick, all legs at once.
+
+The list is flat on purpose: every level of calls is optimised once more by the compiler (measured: 11 s to compile with two
+levels more).
+"""
 
 from __future__ import annotations
 
@@ -6,9 +10,18 @@ from typing import Any
 
 from numba import njit
 
-from footcal.leg.chain import chain_step
-from footcal.leg.current import drive_step
-from footcal.leg.dynamics import dynamics_step
+from footcal.leg.adopt import adopt
+from footcal.leg.chain import first_joint, foot_and_axis, jacobian, next_joint
+from footcal.leg.current import (
+    actuator_torques,
+    freshness,
+    joint_torques,
+    load_torque,
+    read_currents,
+    varying_ratio,
+)
+from footcal.leg.dynamics import below_sensor, first_link, hand_back, link_wrench, next_link, rigid_torques
+from footcal.leg.elementary import curves
 from footcal.leg.motion import joint_motion, read_base, read_joints, slope_joints
 
 
@@ -23,10 +36,39 @@ def leg_step(inp: Any, gravity: Any, s: Any, c: Any) -> None:
         s: state record with the fields of `leg_state_fields`, and `dt_s`, `reset`, `force_B_N` of the last tick.
         c: constants record with the fields of `leg_constant_fields`, and `sen_cross`.
     """
-    read_base(inp, gravity, s, c)
-    read_joints(inp, s, c)
-    slope_joints(s, c)
-    joint_motion(s, c)
-    chain_step(s, c)
-    dynamics_step(s, c)
-    drive_step(inp, s, c)
+    if s.leg_ready[0] == 0 or s.reset[0] != 0:
+        adopt(s, c)
+    read_base(inp, gravity, s)
+    read_joints(inp, s)
+    slope_joints(s)
+    posture(s)
+    read_currents(inp, s)
+    if s.leg_varies[0] != 0:
+        varying_ratio(s)
+    load_torque(s)
+    actuator_torques(s)
+    joint_torques(s)
+    freshness(s)
+
+
+@njit(error_model="numpy")
+def posture(s: Any) -> None:
+    """From actuator angles, speeds and accelerations to geometry, rigid-body torques and inertia below the sensor."""
+    joints = s.leg_q.shape[0]
+    joint_motion(s)
+    for j in range(joints):
+        curves(s, j)
+    first_joint(s)
+    for j in range(1, joints):
+        next_joint(s, j)
+    foot_and_axis(s)
+    jacobian(s)
+    first_link(s)
+    for j in range(1, joints):
+        next_link(s, j)
+    for j in range(joints):
+        link_wrench(s, j)
+    below_sensor(s)
+    for j in range(joints - 1):
+        hand_back(s, joints - 2 - j)
+    rigid_torques(s)
