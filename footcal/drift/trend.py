@@ -14,8 +14,8 @@ from scipy.special import ndtr
 from footcal.records import FloatArray
 
 # Shares of the limit (zero's or span's own), so that one setting serves every foot.
-LEVEL_WALK_per_sqrt_day: Final = 0.015  # standard deviation a day of unsteady wandering
-SLOPE_WALK_per_day_sqrt_day: Final = 0.0004  # how fast the drift rate itself may change
+LEVEL_WALK_per_sqrt_day: Final = 0.006  # standard deviation a day of unsteady wandering
+SLOPE_WALK_per_day_sqrt_day: Final = 0.0003  # how fast the drift rate itself may change
 SLOPE_START_per_day: Final = 0.02  # spread of drift rates of feet nobody knows yet
 LEVEL_START: Final = 10.0  # wide: the first check says where the foot stands
 JUMP_CHI2: Final = 13.815510557964274  # 2 degrees of freedom, 99.9 %: a check further off means a jump, not a drift
