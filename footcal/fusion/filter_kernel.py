@@ -368,7 +368,7 @@ def _combine(s: Any) -> None:
                     out += 1
 
 
-@njit(error_model="numpy")
+@njit(error_model="numpy", inline="always")
 def predict(s: Any, c: Any) -> None:
     """Mix the modes and carry every filter over `dt_s`; the model rows are those `model_rows` has written."""
     _weights(s, c)
@@ -384,7 +384,7 @@ def predict(s: Any, c: Any) -> None:
     _predict_covariances(s)
 
 
-@njit(error_model="numpy")
+@njit(error_model="numpy", inline="always")
 def update(s: Any, c: Any) -> None:
     """Take in the foot reading and the motor torques, then weigh the modes and combine them."""
     joints = s.tau_new.shape[0]

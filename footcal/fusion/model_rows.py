@@ -120,7 +120,7 @@ def _sensor_rows(s: Any, c: Any) -> None:
                 s.fil_h[i, f] = s.axis_B[i, l]
 
 
-@njit(error_model="numpy")
+@njit(error_model="numpy", inline="always")
 def model_rows(s: Any, c: Any) -> None:
     """Write all work rows of the tick from the shared leg fields, the attitude and the trusted readings."""
     _force_rows(s, c)

@@ -35,7 +35,7 @@ def take_time(t_ns: int, s: Any) -> bool:
     return True
 
 
-@njit(error_model="numpy")
+@njit(error_model="numpy", inline="always")
 def filter_step(s: Any, c: Any) -> None:
     """Predict and update all filters of all legs by the readings that `readings` (and health) left usable."""
     if s.reset[0] == 1:
@@ -50,7 +50,7 @@ def filter_step(s: Any, c: Any) -> None:
     update(s, c)
 
 
-@njit(error_model="numpy")
+@njit(error_model="numpy", inline="always")
 def fuse(inp: Any, s: Any, c: Any) -> None:
     """From shared sensor and leg fields to contact and force: trust, filter, observe, decide."""
     readings(s, c)
@@ -96,7 +96,7 @@ def repeat(s: Any, out: Any) -> None:
         out.health[l] |= STALE
 
 
-@njit(error_model="numpy")
+@njit(error_model="numpy", inline="always")
 def step(inp: Any, gravity: Any, s: Any, c: Any, out: Any) -> None:
     """One tick of the whole robot.
 
