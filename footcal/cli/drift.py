@@ -90,45 +90,43 @@ def _print_added(checks: Sequence[NewCheck], new: Sequence[bool], *, json: bool)
         print_json({"checks": rows})
         return
     print_table(
-        f"Checks of foot {checks[0].score.foot_id}",
-        ("session", "date", "state", "zero N", "span %", "loop N", "noise N", "worst E_n"),
+        f"Checks of foot {checks[0].score.foot_id} (± expanded uncertainty, k = 2)",
+        ("session", "", "zero N", "span %", "loop N", "noise N", "E_n"),
         [
             (
-                check.session_name,
-                check.t_utc.date().isoformat(),
-                check.state if fresh else "known already",
+                *(check.session_name, check.state if fresh else "known"),
                 f"{check.score.zero_N:+.2f} ± {2 * check.score.zero_u_N:.2f}",
                 f"{check.score.span_pct:+.2f} ± {2 * check.score.span_u_pct:.2f}",
-                f"{check.score.loop_N:.2f}",
-                f"{check.score.noise_N:.3f}",
+                *(f"{check.score.loop_N:.2f}", f"{check.score.noise_N:.3f}"),
                 f"{max((load.en for load in check.score.loads), key=abs):+.2f}",
             )
             for check, fresh in zip(checks, new, strict=True)
         ],
-        left=3,
+        left=2,
     )
 
 
 def _print_verdicts(verdicts: Sequence[FootVerdict]) -> None:
-    from footcal.cli.console import print_table
+    from footcal.cli.console import out, print_table
 
     print_table(
-        "Drift (limits, trend and dates rest on the checks alone; no safety function)",
-        ("foot", "kind", "verdict", "why", "since", "out", "due (80 %)", "zero N", "span %", "checks", "last"),
+        "Drift, the worst foot first",
+        ("foot", "verdict", "zero N", "span %", "out", "due", "last check"),
         [
             (
-                *(verdict.foot_id, verdict.kind, verdict.text, verdict.reason),
-                *(f"{verdict.since or '-'}", f"{100 * verdict.p_out:.0f} %", _due(verdict)),
-                *(f"{verdict.zero_N:+.2f}", f"{verdict.span_pct:+.2f}"),
-                *(f"{verdict.checks}", verdict.last_check.isoformat()),
+                *(verdict.foot_id, verdict.text, f"{verdict.zero_N:+.2f}", f"{verdict.span_pct:+.2f}"),
+                *(f"{100 * verdict.p_out:.0f} %", f"{verdict.due or '-'}", verdict.last_check.isoformat()),
             )
             for verdict in verdicts
         ],
-        left=5,
+        left=2,
     )
+    for verdict in verdicts:
+        if verdict.needs_action:
+            out().print(f"  {verdict.foot_id}: {verdict.reason}; seen since {verdict.since}{_interval(verdict)}.")
 
 
-def _due(verdict: FootVerdict) -> str:
-    if verdict.due is None:
-        return "-"
-    return f"{verdict.due} ({verdict.due_lo or '-'} … {verdict.due_hi or 'later'})"
+def _interval(verdict: FootVerdict) -> str:
+    if verdict.due is None or verdict.due <= verdict.last_check:
+        return ""
+    return f"; outside between {verdict.due_lo} and {verdict.due_hi or 'later'} (80 %)"

@@ -91,18 +91,16 @@ def follow(points: Sequence[TrendPoint], limits: tuple[float, float]) -> Trend:
     tracker = KalmanFilter(dim_x=4, dim_z=2)
     tracker.H = np.array([[1.0, 0.0, 0.0, 0.0], [0.0, 0.0, 1.0, 0.0]])
     tracker.x = np.zeros(4)
-    scale = np.repeat(limits, 2)
-    tracker.P = np.diag((scale * np.tile([LEVEL_START, SLOPE_START_per_day], 2)) ** 2)
+    tracker.P = np.diag((np.repeat(limits, 2) * np.tile([LEVEL_START, SLOPE_START_per_day], 2)) ** 2)
     last_days, jumped = points[0].t_days, False
     for index, point in enumerate(points):
         days = max(point.t_days - last_days, 0.0)
-        tracker.predict(F=_transition(days), Q=_process_noise(days, scale))
-        zz, zs, ss = point.covariance
-        R, z = np.array([[zz, zs], [zs, ss]]), np.array(point.value)
-        jumped = index > 0 and _chi2(tracker, z, R) > JUMP_CHI2
+        tracker.predict(F=_transition(days), Q=_process_noise(days, limits))
+        jumped = index > 0 and _chi2(tracker, point) > JUMP_CHI2
         if jumped:
             tracker.P[[0, 2], [0, 2]] += (np.array(limits) * LEVEL_START) ** 2
-        tracker.update(z, R=R)
+        zz, zs, ss = point.covariance
+        tracker.update(np.array(point.value), R=np.array([[zz, zs], [zs, ss]]))
         last_days = point.t_days
     return Trend(last_days, np.array(tracker.x), np.array(tracker.P), limits, jumped)
 
@@ -124,20 +122,28 @@ def due(trend: Trend) -> Due:
 
 
 def _transition(days: float) -> FloatArray:
-    F = np.eye(4)
+    F = np.identity(4)
     F[0, 1] = F[2, 3] = days
     return F
 
 
-def _process_noise(days: float, scale: FloatArray) -> FloatArray:
+def _process_noise(days: float, limits: tuple[float, float]) -> FloatArray:
+    """Return the noise of both pairs of level and slope; white noise on each, integrated over the days."""
     level, slope = LEVEL_WALK_per_sqrt_day**2, SLOPE_WALK_per_day_sqrt_day**2
-    block = np.array([[level * days + slope * days**3 / 3, slope * days**2 / 2], [slope * days**2 / 2, slope * days]])
-    return np.kron(np.eye(2), block) * np.outer(scale, scale)
+    Q = np.zeros((4, 4))
+    for k, limit in ((0, limits[0]), (2, limits[1])):
+        Q[k, k] = (level * days + slope * days**3 / 3.0) * limit**2
+        Q[k, k + 1] = Q[k + 1, k] = slope * days**2 / 2.0 * limit**2
+        Q[k + 1, k + 1] = slope * days * limit**2
+    return Q
 
 
-def _chi2(tracker: KalmanFilter, z: FloatArray, R: FloatArray) -> float:
-    innovation = z - tracker.H @ tracker.x
-    return float(innovation @ np.linalg.solve(tracker.H @ tracker.P @ tracker.H.T + R, innovation))
+def _chi2(tracker: KalmanFilter, point: TrendPoint) -> float:
+    """Return how far a check lies from its prediction, squared, in joint standard deviations (2 degrees of freedom)."""
+    x, P = tracker.x, tracker.P
+    dz, ds = point.value[0] - float(x[0]), point.value[1] - float(x[2])
+    zz, zs, ss = (float(p) + r for p, r in zip((P[0, 0], P[0, 2], P[2, 2]), point.covariance, strict=True))
+    return (ss * dz * dz - 2.0 * zs * dz * ds + zz * ds * ds) / (zz * ss - zs * zs)
 
 
 def _ahead(state: FloatArray, covariance: FloatArray, limit: float, days: FloatArray) -> tuple[FloatArray, FloatArray]:

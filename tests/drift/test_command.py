@@ -100,7 +100,9 @@ def test_a_session_added_again_is_known(tmp_path: Path, capsys: pytest.CaptureFi
     """It is said so, and the exit code is good: a script may be run twice."""
     added(tmp_path, week(tmp_path, 1))
     assert added(tmp_path, str(tmp_path / "week_01")) == 0
-    assert "known already" in capsys.readouterr().out
+    printed = capsys.readouterr()
+    assert "known" in printed.out
+    assert "added 0 of 1" in printed.err
 
 
 def test_add_gives_json_with_every_load(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
