@@ -56,6 +56,7 @@ def consistent(robot: SimRobot, plan: MotionPlan, corners_Hz: tuple[float, ...] 
         tilting = gaussian_filter1d(surplus[3:5], LEAN_s / dt_s, axis=1)
         give[:2] += np.stack([-tilting[1], tilting[0]]) / robot.weight_N  # lean against a lasting moment
         surplus[3:5] -= tilting
+        demand[3:5] -= tilting
         step = _yield(surplus / inertia[:, None], dt_s, corner_Hz)
         give += step
         demand += inertia[:, None] * (2.0 * np.pi * corner_Hz) ** 2 * step  # what the motion leaves, the feet must give

@@ -65,12 +65,12 @@ def test_forces_move_the_centre_of_mass(motion: str) -> None:
     assert np.all(rms < 0.3)  # 0.2 % of body weight: what the iteration leaves when both feet of a trot are nearly free
 
 
-@pytest.mark.parametrize("motion", ["walk", "trot"])
+@pytest.mark.parametrize("motion", ["stand", "walk", "trot", "push"])
 def test_moments_about_the_centre_of_mass_nearly_balance(motion: str) -> None:
-    """What is left of the moment balance is under 0.5 N m rms, 0.3 % of weight times 1 m."""
+    """What is left of the moment balance is under 0.35 N m rms, 0.2 % of weight times 1 m."""
     r = run(motion)
     left = np.array([r.inner[f"surplus_moment.{a}_Nm"] for a in "xyz"])
-    assert np.all(np.sqrt(np.mean(left**2, axis=1)) < 0.5)
+    assert np.all(np.sqrt(np.mean(left**2, axis=1)) < 0.35)
 
 
 def test_feet_only_push_and_stay_inside_the_friction_cone() -> None:
