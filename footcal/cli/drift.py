@@ -11,7 +11,7 @@ import typer
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from footcal.drift.history import NewCheck
+    from footcal.drift.records import NewCheck
     from footcal.drift.verdict import FootVerdict
 
 History = Annotated[Path, typer.Option("--history", help="The history, an SQLite file.")]

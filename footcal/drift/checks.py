@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
 from typing import Final, Protocol
 
 import numpy as np
 
 from footcal.drift.limits import placement_sd_N
+from footcal.drift.records import CheckScore, LoadCheck
 from footcal.errors import SessionError
 from footcal.files.session import Session
 from footcal.fit.holds import bench_place, holds_of
@@ -57,37 +57,6 @@ class ForceCalibration(Protocol):
     def u_static_N(self, force_N: FloatArray) -> FloatArray:
         """Return the standard uncertainty of a settled reading at each force, newtons."""
         ...
-
-
-@dataclass(frozen=True, slots=True)
-class LoadCheck:
-    """One load of a check: what it was, what the calibrated foot read, and whether that is too far."""
-
-    step: int
-    direction: str  # zero, up, down
-    load_N: float
-    reading_N: float  # mean over the settled window
-    deviation_N: float  # reading less load
-    u_cal_N: float  # standard uncertainty of the calibration at this force
-    u_check_N: float  # standard uncertainty of load and reading today
-    settling_u_N: float  # the part of it by which the reading still crept during the window
-    en: float  # deviation over combined expanded uncertainty; beyond ±1 it does not agree (ISO/IEC 17043 sense)
-
-
-@dataclass(frozen=True, slots=True)
-class CheckScore:
-    """What one check session says of one foot."""
-
-    foot_id: str
-    loads: tuple[LoadCheck, ...]
-    zero_N: float  # shift of zero since the calibration
-    zero_u_N: float  # standard uncertainty
-    span_pct: float  # change of span since the calibration, per cent
-    span_u_pct: float
-    zero_span_cov_N_pct: float
-    loop_N: float  # widest gap between unloading and loading at one load; NaN where no load was met both ways
-    noise_N: float  # of single readings, standard deviation
-    temp_C: float  # mean; NaN without a thermometer
 
 
 def en_number(deviation_N: float, u_cal_N: float, u_check_N: float) -> float:

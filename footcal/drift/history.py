@@ -9,58 +9,16 @@ import sqlite3
 import time
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Final, Self
 
 import footcal
-from footcal.drift.checks import CheckScore
-from footcal.drift.limits import DriftLimits
+from footcal.drift.records import NewCheck, StoredCheck
 from footcal.drift.schema import migrate
 from footcal.errors import DeviceError, FileFormatError, SessionError, SettingError
 
 STATES: Final = ("as-found", "as-left")
 BUSY_s: Final = 15.0
-
-
-@dataclass(frozen=True, slots=True)
-class NewCheck:
-    """A scored check on its way into the history."""
-
-    score: CheckScore
-    limits: DriftLimits
-    kind: str
-    capacity_N: float
-    calibration_sha256: str
-    session_sha256: str
-    session_name: str
-    state: str  # as-found: before anything was adjusted; as-left: after
-    t_utc: dt.datetime
-
-
-@dataclass(frozen=True, slots=True)
-class StoredCheck:
-    """A check as the history holds it, without its single loads."""
-
-    id: int
-    foot_id: str
-    kind: str
-    capacity_N: float
-    calibration_sha256: str
-    session_name: str
-    state: str
-    t_utc: dt.datetime
-    zero_N: float
-    zero_u_N: float
-    span_pct: float
-    span_u_pct: float
-    zero_span_cov_N_pct: float
-    loop_N: float  # NaN where not measured
-    noise_N: float
-    temp_C: float
-    limit_span_pct: float
-    limit_zero_N: float
-    worst_en: float  # of its loads, by size
 
 
 class History:

@@ -7,8 +7,8 @@ import os
 from collections.abc import Sequence
 
 from footcal.drift.checks import ForceCalibration, score_check
-from footcal.drift.history import NewCheck
 from footcal.drift.limits import DriftLimits, drift_limits
+from footcal.drift.records import NewCheck
 from footcal.errors import SessionError
 from footcal.files.session import Session, read_session
 from footcal.files.session_meta import SessionDefaults

@@ -12,8 +12,8 @@ from typing import Any, Final
 import numpy as np
 
 from footcal.drift.charts import ewma, run_start
-from footcal.drift.history import StoredCheck
 from footcal.drift.limits import drift_limits
+from footcal.drift.records import StoredCheck
 from footcal.drift.trend import Due, Trend, TrendPoint, due, follow, slope_in_sds
 from footcal.records import FloatArray
 

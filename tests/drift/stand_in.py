@@ -9,9 +9,8 @@ from dataclasses import dataclass
 import numpy as np
 import pandas as pd
 
-from footcal.drift.checks import CheckScore, LoadCheck
-from footcal.drift.history import NewCheck, StoredCheck
 from footcal.drift.limits import drift_limits
+from footcal.drift.records import CheckScore, LoadCheck, NewCheck, StoredCheck
 from footcal.files.session import Session, session_from_tables
 from footcal.files.session_meta import SessionMeta
 from footcal.records import FloatArray

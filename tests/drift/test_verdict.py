@@ -7,7 +7,7 @@ import json
 
 import pytest
 
-from footcal.drift.history import StoredCheck
+from footcal.drift.records import StoredCheck
 from footcal.drift.verdict import FootVerdict, fleet_verdicts, foot_verdict, since_adjustment
 from tests.drift.stand_in import START, stored
 
