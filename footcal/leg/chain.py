@@ -9,14 +9,24 @@ from typing import Any
 
 from numba import njit
 
+from footcal.leg.fields import AXIS, BALL, P0, R0
+
 
 @njit(error_model="numpy")
 def first_joint(s: Any) -> None:
     """Place joint 0 straight from the description."""
     for k in range(s.leg_q.shape[1]):
         for i in range(3):
-            s.leg_p[i, 0, k] = s.leg_p0[i, 0, k]
-            turn_row(s, 0, i, k, s.leg_R0[3 * i, 0, k], s.leg_R0[3 * i + 1, 0, k], s.leg_R0[3 * i + 2, 0, k])
+            s.leg_p[i, 0, k] = s.leg_link[P0 + i, 0, k]
+            turn_row(
+                s,
+                0,
+                i,
+                k,
+                s.leg_link[R0 + 3 * i, 0, k],
+                s.leg_link[R0 + 3 * i + 1, 0, k],
+                s.leg_link[R0 + 3 * i + 2, 0, k],
+            )
 
 
 @njit(error_model="numpy")
@@ -30,23 +40,26 @@ def next_joint(s: Any, j: int) -> None:
             b = s.leg_R[3 * i + 1, j - 1, k]
             d = s.leg_R[3 * i + 2, j - 1, k]
             s.leg_p[i, j, k] = (
-                s.leg_p[i, j - 1, k] + a * s.leg_p0[0, j, k] + b * s.leg_p0[1, j, k] + d * s.leg_p0[2, j, k]
+                s.leg_p[i, j - 1, k]
+                + a * s.leg_link[P0, j, k]
+                + b * s.leg_link[P0 + 1, j, k]
+                + d * s.leg_link[P0 + 2, j, k]
             )
             turn_row(
                 s,
                 j,
                 i,
                 k,
-                a * s.leg_R0[0, j, k] + b * s.leg_R0[3, j, k] + d * s.leg_R0[6, j, k],
-                a * s.leg_R0[1, j, k] + b * s.leg_R0[4, j, k] + d * s.leg_R0[7, j, k],
-                a * s.leg_R0[2, j, k] + b * s.leg_R0[5, j, k] + d * s.leg_R0[8, j, k],
+                a * s.leg_link[R0, j, k] + b * s.leg_link[R0 + 3, j, k] + d * s.leg_link[R0 + 6, j, k],
+                a * s.leg_link[R0 + 1, j, k] + b * s.leg_link[R0 + 4, j, k] + d * s.leg_link[R0 + 7, j, k],
+                a * s.leg_link[R0 + 2, j, k] + b * s.leg_link[R0 + 5, j, k] + d * s.leg_link[R0 + 8, j, k],
             )
 
 
 @njit(error_model="numpy")
 def turn_row(s: Any, j: int, i: int, k: int, a: float, b: float, d: float) -> None:
     """Row i of (frame at angle zero) times the turn about the joint's axis, after Rodrigues: row R = cos row + sin row x u + (1-cos)(row.u) u."""
-    ux, uy, uz = s.leg_axis[0, j, k], s.leg_axis[1, j, k], s.leg_axis[2, j, k]
+    ux, uy, uz = s.leg_link[AXIS, j, k], s.leg_link[AXIS + 1, j, k], s.leg_link[AXIS + 2, j, k]
     sin, cos = s.leg_sin[j, k], s.leg_cos[j, k]
     along = a * ux + b * uy + d * uz
     rest = (1.0 - cos) * along
@@ -62,7 +75,7 @@ def foot_and_axis(s: Any) -> None:
     j = s.leg_q.shape[0] - 1
     for k in range(s.leg_q.shape[1]):
         hx, hy, hz = s.leg_h[0, k], s.leg_h[1, k], s.leg_h[2, k]
-        px, py, pz = s.leg_foot[0, k], s.leg_foot[1, k], s.leg_foot[2, k]
+        px, py, pz = s.leg_foot[BALL, k], s.leg_foot[BALL + 1, k], s.leg_foot[BALL + 2, k]
         for i in range(3):
             a = s.leg_R[3 * i, j, k]
             b = s.leg_R[3 * i + 1, j, k]

@@ -10,7 +10,48 @@ import numpy as np
 
 from footcal.leg.drive import leg_drives
 from footcal.leg.drivefile import DriveFile
-from footcal.leg.fields import leg_constant_fields, leg_state_fields
+from footcal.leg.fields import (
+    AXIS,
+    BALL,
+    COM,
+    COULOMB,
+    COUPLED,
+    CURRENT_0,
+    CURRENT_SD,
+    DISTAL,
+    DISTAL_KG,
+    DQ_TAU_S,
+    ENC_OFF,
+    ENC_SIGN,
+    EXTRA,
+    FRIC_TAU_S,
+    HAS_MOTOR,
+    HERE,
+    INERTIA,
+    KT,
+    KT_C,
+    KT_PER_K,
+    KT_U,
+    LAG_S,
+    LEAD,
+    MASS,
+    MOVING_SD,
+    NODE_0,
+    NODE_STEP,
+    P0,
+    R0,
+    ROTOR,
+    SENSOR,
+    SHARE,
+    STRIBECK,
+    STUCK_SD,
+    UNSTICK,
+    VARIES,
+    VISCOUS,
+    W_TAU_S,
+    leg_constant_fields,
+    leg_state_fields,
+)
 from footcal.leg.description import Robot
 from footcal.leg.rotation import from_rpy
 from footcal.leg.schema import Foot, Joint, Leg
@@ -32,57 +73,67 @@ class LegSettings:
 
 
 def fill_leg_constants(
-    robot: Robot, drives: Sequence[DriveFile | None], c: Any, settings: LegSettings | None = None
+    robot: Robot,
+    drives: Sequence[DriveFile | None],
+    c: Any,
+    settings: LegSettings | None = None,
+    only: str | None = None,
 ) -> None:
-    """Write the whole robot into the leg fields of the constants record `c`.
+    """Write the whole robot, or one leg of it, into the leg fields of the constants record `c`.
 
     Args:
         robot: the description.
         drives: the drive file of each leg, in the order of lanes; None where there is none.
         c: one-element record array with the fields of `leg_constant_fields` (others are left alone).
         settings: of the step; the starting values when left out.
+        only: name of the one leg that a record of one lane is for.
 
     Raises:
         SettingError: a screw's lever arm vanishes within its range.
     """
     settings = settings or LegSettings()
+    legs = robot.legs if only is None else (robot.leg(only),)
     for name, _, _ in leg_constant_fields(1, 3):
         c[name][...] = 0
-    for lane, (leg, drive) in enumerate(zip(robot.legs, drives, strict=True)):
+    for lane, (leg, drive) in enumerate(zip(legs, drives, strict=True)):
         _fill_chain(leg, c, lane)
         _fill_foot(leg.foot, c, lane)
         _fill_actuators(leg, drive, c, lane)
-    c["leg_unstick"][...] = 1.0 / settings.stuck_speed_rad_per_s
-    c["leg_stuck_sd"][...] = settings.stuck_sd_share
-    c["leg_moving_sd"][...] = settings.moving_sd_share
-    c["leg_fric_tau_s"][...] = settings.friction_corr_s
-    c["leg_dq_tau_s"][...] = settings.dq_filter_s
-    c["leg_w_tau_s"][...] = settings.gyro_filter_s
-    c["leg_lead"][...] = settings.lead
-    c["leg_imu_R"][...] = from_rpy(robot.file.imu.rpy_rad)
-    c["leg_imu_p"][...] = robot.file.imu.xyz_m
+    values = {
+        UNSTICK: 1.0 / settings.stuck_speed_rad_per_s,
+        STUCK_SD: settings.stuck_sd_share,
+        MOVING_SD: settings.moving_sd_share,
+        FRIC_TAU_S: settings.friction_corr_s,
+        DQ_TAU_S: settings.dq_filter_s,
+        W_TAU_S: settings.gyro_filter_s,
+        LEAD: settings.lead,
+    }
+    for row, value in values.items():
+        c["leg_set"][..., row] = value
+    c["leg_imu"][..., :9] = from_rpy(robot.file.imu.rpy_rad).ravel()
+    c["leg_imu"][..., 9:] = robot.file.imu.xyz_m
 
 
 def _fill_chain(leg: Leg, c: Any, lane: int) -> None:
-    c["leg_joints"][..., lane] = len(leg.joints)
-    for j in range(c["leg_mass"].shape[-2]):
-        c["leg_R0"][..., :, j, lane] = np.eye(3).ravel()
+    for j in range(c["leg_link"].shape[-2]):
+        c["leg_link"][..., R0 : R0 + 9, j, lane] = np.eye(3).ravel()
     for j, joint in enumerate(leg.joints):
-        c["leg_R0"][..., :, j, lane] = from_rpy(joint.rpy_rad).ravel()
-        c["leg_p0"][..., :, j, lane] = joint.xyz_m
-        c["leg_axis"][..., :, j, lane] = _unit(joint.axis)
-        c["leg_mass"][..., j, lane] = joint.mass_kg
-        c["leg_com"][..., :, j, lane] = joint.com_m
-        c["leg_inertia"][..., :, j, lane] = joint.inertia_kg_m2
-        c["leg_enc_sign"][..., j, lane] = joint.encoder_sign
-        c["leg_enc_off"][..., j, lane] = joint.encoder_offset_rad
+        c["leg_link"][..., R0 : R0 + 9, j, lane] = from_rpy(joint.rpy_rad).ravel()
+        c["leg_link"][..., P0 : P0 + 3, j, lane] = joint.xyz_m
+        c["leg_link"][..., AXIS : AXIS + 3, j, lane] = _unit(joint.axis)
+        c["leg_link"][..., MASS, j, lane] = joint.mass_kg
+        c["leg_link"][..., COM : COM + 3, j, lane] = joint.com_m
+        c["leg_link"][..., INERTIA : INERTIA + 6, j, lane] = joint.inertia_kg_m2
+        c["leg_drive"][..., ENC_SIGN, j, lane] = joint.encoder_sign
+        c["leg_drive"][..., ENC_OFF, j, lane] = joint.encoder_offset_rad
+        c["leg_drive"][..., HERE, j, lane] = 1.0
 
 
 def _fill_foot(foot: Foot, c: Any, lane: int) -> None:
-    c["leg_foot"][..., :, lane] = foot.xyz_m
-    c["leg_distal_kg"][..., lane] = foot.distal_mass_kg
-    c["leg_distal"][..., :, lane] = foot.xyz_m if foot.distal_com_m is None else foot.distal_com_m
-    c["leg_sensor"][..., :, :, lane] = sensor_frame(foot)
+    c["leg_foot"][..., BALL : BALL + 3, lane] = foot.xyz_m
+    c["leg_foot"][..., DISTAL_KG, lane] = foot.distal_mass_kg
+    c["leg_foot"][..., DISTAL : DISTAL + 3, lane] = foot.xyz_m if foot.distal_com_m is None else foot.distal_com_m
+    c["leg_foot"][..., SENSOR : SENSOR + 9, lane] = sensor_frame(foot).ravel()
 
 
 def sensor_frame(foot: Foot) -> FloatArray:
@@ -108,41 +159,40 @@ def _fill_actuators(leg: Leg, drive: DriveFile | None, c: Any, lane: int) -> Non
     matrix = np.eye(c["leg_M"].shape[-2])
     if leg.actuator_matrix is not None:
         matrix[:n, :n] = leg.actuator_matrix
-    inverse = np.linalg.inv(matrix)
-    c["leg_M"][..., :, :, lane] = matrix
-    c["leg_Minv"][..., :, :, lane] = inverse
-    c["leg_MinvT"][..., :, :, lane] = inverse.T
-    c["leg_node_step"][..., :, lane] = 1.0
+        c["leg_set"][..., COUPLED] = 1.0
+    c["leg_M"][..., 0, :, :, lane] = matrix
+    c["leg_M"][..., 1, :, :, lane] = np.linalg.inv(matrix)
+    c["leg_drive"][..., NODE_STEP, :, lane] = 1.0
     for j, (joint, figures) in enumerate(zip(leg.joints, leg_drives(leg.joints, drive), strict=True)):
         values = {
-            "leg_motor": figures.kt_Nm_per_A > 0.0,
-            "leg_kt": figures.kt_Nm_per_A,
-            "leg_kt_per_K": figures.kt_temp_coeff_per_K,
-            "leg_kt_C": figures.kt_temp_C,
-            "leg_kt_u": figures.kt_u_share,
-            "leg_rotor": figures.rotor_inertia_kg_m2,
-            "leg_i0": figures.current_offset_A,
-            "leg_i_sd": figures.current_noise_A,
-            "leg_coulomb": figures.coulomb_Nm,
-            "leg_extra": figures.breakaway_Nm - figures.coulomb_Nm,
-            "leg_stribeck": 1.0 / figures.stribeck_rad_per_s,
-            "leg_viscous": figures.viscous_Nms_per_rad,
-            "leg_share": figures.load_share,
-            "leg_lag_s": figures.lag_s,
+            HAS_MOTOR: figures.kt_Nm_per_A > 0.0,
+            KT: figures.kt_Nm_per_A,
+            KT_PER_K: figures.kt_temp_coeff_per_K,
+            KT_C: figures.kt_temp_C,
+            KT_U: figures.kt_u_share,
+            ROTOR: figures.rotor_inertia_kg_m2,
+            CURRENT_0: figures.current_offset_A,
+            CURRENT_SD: figures.current_noise_A,
+            COULOMB: figures.coulomb_Nm,
+            EXTRA: figures.breakaway_Nm - figures.coulomb_Nm,
+            STRIBECK: 1.0 / figures.stribeck_rad_per_s,
+            VISCOUS: figures.viscous_Nms_per_rad,
+            SHARE: figures.load_share,
+            LAG_S: figures.lag_s,
         }
-        for name, value in values.items():
-            c[name][..., j, lane] = value
+        for row, value in values.items():
+            c["leg_drive"][..., row, j, lane] = value
         _fill_ratio(joint, c, j, lane)
 
 
 def _fill_ratio(joint: Joint, c: Any, j: int, lane: int) -> None:
     nodes = ratio_nodes(joint)
-    c["leg_ratio_0"][..., j, :, lane] = nodes.ratio
-    c["leg_ratio_1"][..., j, :, lane] = nodes.slope_per_rad * nodes.step_rad
-    c["leg_node_0"][..., j, lane] = nodes.first_rad
-    c["leg_node_step"][..., j, lane] = nodes.step_rad
+    c["leg_nodes"][..., 0, :, j, lane] = nodes.ratio
+    c["leg_nodes"][..., 1, :, j, lane] = nodes.slope_per_rad * nodes.step_rad
+    c["leg_drive"][..., NODE_0, j, lane] = nodes.first_rad
+    c["leg_drive"][..., NODE_STEP, j, lane] = nodes.step_rad
     if nodes.varies:
-        c["leg_varies"][...] = 1
+        c["leg_set"][..., VARIES] = 1.0
 
 
 def _unit(vector: Sequence[float]) -> FloatArray:

@@ -10,6 +10,8 @@ from typing import Any
 
 from numba import njit
 
+from footcal.leg.fields import COM, DISTAL, DISTAL_KG, INERTIA, MASS
+
 
 @njit(error_model="numpy")
 def first_link(s: Any) -> None:
@@ -87,19 +89,19 @@ def link_wrench(s: Any, j: int) -> None:
         R0, R1, R2 = s.leg_R[0, j, k], s.leg_R[1, j, k], s.leg_R[2, j, k]
         R3, R4, R5 = s.leg_R[3, j, k], s.leg_R[4, j, k], s.leg_R[5, j, k]
         R6, R7, R8 = s.leg_R[6, j, k], s.leg_R[7, j, k], s.leg_R[8, j, k]
-        cx, cy, cz = s.leg_com[0, j, k], s.leg_com[1, j, k], s.leg_com[2, j, k]
+        cx, cy, cz = s.leg_link[COM, j, k], s.leg_link[COM + 1, j, k], s.leg_link[COM + 2, j, k]
         rx, ry, rz = R0 * cx + R1 * cy + R2 * cz, R3 * cx + R4 * cy + R5 * cz, R6 * cx + R7 * cy + R8 * cz
         wx, wy, wz = s.leg_av[0, j, k], s.leg_av[1, j, k], s.leg_av[2, j, k]
         ux, uy, uz = s.leg_aa[0, j, k], s.leg_aa[1, j, k], s.leg_aa[2, j, k]
         vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx
-        m = s.leg_mass[j, k]
+        m = s.leg_link[MASS, j, k]
         fx = m * (s.leg_la[0, j, k] + uy * rz - uz * ry + wy * vz - wz * vy)
         fy = m * (s.leg_la[1, j, k] + uz * rx - ux * rz + wz * vx - wx * vz)
         fz = m * (s.leg_la[2, j, k] + ux * ry - uy * rx + wx * vy - wy * vx)
         ox, oy, oz = R0 * wx + R3 * wy + R6 * wz, R1 * wx + R4 * wy + R7 * wz, R2 * wx + R5 * wy + R8 * wz
         ax, ay, az = R0 * ux + R3 * uy + R6 * uz, R1 * ux + R4 * uy + R7 * uz, R2 * ux + R5 * uy + R8 * uz
-        xx, yy, zz = s.leg_inertia[0, j, k], s.leg_inertia[1, j, k], s.leg_inertia[2, j, k]
-        xy, xz, yz = s.leg_inertia[3, j, k], s.leg_inertia[4, j, k], s.leg_inertia[5, j, k]
+        xx, yy, zz = s.leg_link[INERTIA, j, k], s.leg_link[INERTIA + 1, j, k], s.leg_link[INERTIA + 2, j, k]
+        xy, xz, yz = s.leg_link[INERTIA + 3, j, k], s.leg_link[INERTIA + 4, j, k], s.leg_link[INERTIA + 5, j, k]
         hx, hy, hz = xx * ox + xy * oy + xz * oz, xy * ox + yy * oy + yz * oz, xz * ox + yz * oy + zz * oz
         nx = xx * ax + xy * ay + xz * az + oy * hz - oz * hy
         ny = xy * ax + yy * ay + yz * az + oz * hx - ox * hz
@@ -136,7 +138,7 @@ def below_sensor(s: Any) -> None:
     """h.m_d(g - a_c): what the mass below the sensor takes from the ground's push before the sensor feels it."""
     j = s.leg_q.shape[0] - 1
     for k in range(s.leg_q.shape[1]):
-        cx, cy, cz = s.leg_distal[0, k], s.leg_distal[1, k], s.leg_distal[2, k]
+        cx, cy, cz = s.leg_foot[DISTAL, k], s.leg_foot[DISTAL + 1, k], s.leg_foot[DISTAL + 2, k]
         rx = s.leg_R[0, j, k] * cx + s.leg_R[1, j, k] * cy + s.leg_R[2, j, k] * cz
         ry = s.leg_R[3, j, k] * cx + s.leg_R[4, j, k] * cy + s.leg_R[5, j, k] * cz
         rz = s.leg_R[6, j, k] * cx + s.leg_R[7, j, k] * cy + s.leg_R[8, j, k] * cz
@@ -146,7 +148,9 @@ def below_sensor(s: Any) -> None:
         ax = s.leg_la[0, j, k] + uy * rz - uz * ry + wy * vz - wz * vy
         ay = s.leg_la[1, j, k] + uz * rx - ux * rz + wz * vx - wx * vz
         az = s.leg_la[2, j, k] + ux * ry - uy * rx + wx * vy - wy * vx
-        s.axial_inertia_N[k] = -s.leg_distal_kg[k] * (s.axis_B[0, k] * ax + s.axis_B[1, k] * ay + s.axis_B[2, k] * az)
+        s.axial_inertia_N[k] = -s.leg_foot[DISTAL_KG, k] * (
+            s.axis_B[0, k] * ax + s.axis_B[1, k] * ay + s.axis_B[2, k] * az
+        )
 
 
 @njit(error_model="numpy")

@@ -12,6 +12,8 @@ from typing import Any
 import numpy as np
 from numba import njit
 
+from footcal.leg.fields import STRIBECK, UNSTICK
+
 TWO_OVER_PI = 0.6366197723675814
 HALF_PI_HIGH = 1.57079632673412561417e0  # first 33 bits of pi/2
 HALF_PI_LOW = 6.07710050650619224932e-11
@@ -20,7 +22,7 @@ HALF_PI_LOW = 6.07710050650619224932e-11
 @njit(error_model="numpy")
 def curves(s: Any, j: int) -> None:
     """Sine and cosine of joint angle j; tanh(speed/stuck speed) without its sign; Stribeck's bump exp(-(speed/v_st)^2)."""
-    unstick = s.leg_unstick[0]  # read before the loop: a row that does not move with j would stop the vector
+    unstick = s.leg_set[UNSTICK]  # read before the loop: a row that does not move with j would stop the vector
     for k in range(s.leg_q.shape[1]):
         turns = np.floor(s.leg_q[j, k] * TWO_OVER_PI + 0.5)  # quarter turns
         rest = (s.leg_q[j, k] - turns * HALF_PI_HIGH) - turns * HALF_PI_LOW
@@ -32,7 +34,7 @@ def curves(s: Any, j: int) -> None:
         s.leg_cos[j, k] = sign * (cosine - odd * (cosine + sine))
         e = falling(2.0 * abs(s.leg_dphi[j, k]) * unstick)
         s.leg_grip[j, k] = (1.0 - e) / (1.0 + e)
-        x = s.leg_dphi[j, k] * s.leg_stribeck[j, k]
+        x = s.leg_dphi[j, k] * s.leg_drive[STRIBECK, j, k]
         s.leg_bump[j, k] = falling(x * x)
 
 

@@ -19,6 +19,54 @@ import numpy as np
 Field = tuple[str, str, tuple[int, ...]]
 RATIO_NODES = 33  # of the table of a varying ratio
 
+# Rows of leg_link, one column a joint.
+R0, P0, AXIS, COM, INERTIA, MASS, LINK_ROWS = 0, 9, 12, 15, 18, 24, 25
+#   R0       link before <- joint at angle zero, row by row
+#   P0       joint origin, m, link before
+#   AXIS     unit axis, link
+#   COM      centre of mass, m, link
+#   INERTIA  xx, yy, zz, xy, xz, yz about the centre of mass, kg m2, link
+
+# Rows of leg_drive, one column an actuator.
+ENC_SIGN, ENC_OFF, KT, KT_PER_K, KT_C, KT_U, ROTOR, CURRENT_0, CURRENT_SD = 0, 1, 2, 3, 4, 5, 6, 7, 8
+COULOMB, EXTRA, STRIBECK, VISCOUS, SHARE, LAG_S, NODE_0, NODE_STEP, HAS_MOTOR, HERE = (
+    9,
+    10,
+    11,
+    12,
+    13,
+    14,
+    15,
+    16,
+    17,
+    18,
+)
+DRIVE_ROWS = 19
+#   KT_C      temperature the torque constant holds for;  KT_U  its relative standard uncertainty
+#   EXTRA     breakaway - Coulomb, Nm;  STRIBECK  1 / Stribeck speed
+#   NODE_0    angle of the first node of a varying ratio;  HAS_MOTOR, HERE  1 or 0
+
+# Rows of leg_foot, one column a leg; last link.
+BALL, DISTAL, DISTAL_KG, SENSOR, FOOT_ROWS = 0, 3, 6, 7, 16
+#   SENSOR    sensor x, y and axis, three rows each
+
+# Entries of leg_set.
+UNSTICK, STUCK_SD, MOVING_SD, FRIC_TAU_S, DQ_TAU_S, W_TAU_S, LEAD, VARIES, COUPLED, SET_ROWS = (
+    0,
+    1,
+    2,
+    3,
+    4,
+    5,
+    6,
+    7,
+    8,
+    9,
+)
+#   UNSTICK   1 / speed of the smooth step between stuck and moving;  STUCK_SD, MOVING_SD  friction error over its limit
+#   LEAD      1 undoes the lag of the derivative filters to first order
+#   VARIES    1 where any ratio varies;  COUPLED  1 where any leg has an actuator matrix
+
 
 def leg_state_fields(legs: int, joints: int) -> list[Field]:
     """Return name, type and shape of every state field of the leg part: what it hands on, what it remembers, work rows."""
@@ -46,7 +94,7 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("leg_slope", "f8", (J, L)),  # its raw derivative, rad/s2
         ("leg_slope_lp", "f8", (J, L)),
         ("leg_ddphi", "f8", (J, L)),
-        ("leg_on", "i8", (J, L)),  # 1 while the derivative filter runs
+        ("leg_starts", "f8", (J, L)),  # 1 where the derivative filter starts with this reading
         ("leg_current_A", "f8", (J, L)),
         ("leg_current_age_s", "f8", (J, L)),
         ("leg_current_new", "i8", (J, L)),
@@ -65,6 +113,7 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
     ]
     work: list[Field] = [
         ("leg_h", "f8", (3, L)),  # sensor axis + cross-sensitivity, last link
+        ("leg_speed", "f8", (J, L)),  # newly read actuator speed
         ("leg_gap_s", "f8", (J, L)),  # time since the reading before; 0 where none is new
         ("leg_decay", "f8", (J, L)),
         ("leg_q", "f8", (J, L)),  # joint angle, speed, acceleration
@@ -83,9 +132,9 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("leg_ratio", "f8", (J, L)),
         ("leg_dratio", "f8", (J, L)),
         ("leg_load", "f8", (J, L)),  # actuator torque that the load asks for
-        ("leg_act", "f8", (J, L)),  # actuator-side results before they are turned into joint torques
-        ("leg_act2", "f8", (J, L)),
-        ("leg_act3", "f8", (J, L)),
+        ("leg_known", "f8", (J, L)),  # 1 where the actuator's current and the leg's posture are fresh
+        ("leg_worst_s", "f8", (J, L)),  # age of the leg's oldest joint reading, the same for all its joints
+        ("leg_act", "f8", (6, J, L)),  # actuator-side results before they are turned into joint torques
         ("leg_grip", "f8", (J, L)),  # tanh(speed / stuck speed)
         ("leg_bump", "f8", (J, L)),  # Stribeck's exponential
     ]
@@ -93,53 +142,16 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
 
 
 def leg_constant_fields(legs: int, joints: int) -> list[Field]:
-    """Return name, type and shape of every constant field of the leg part."""
+    """Return name, type and shape of every constant field of the leg part; the rows are named at the top of this file."""
     J, L = joints, legs
     return [
-        ("leg_joints", "i8", (L,)),
-        ("leg_R0", "f8", (9, J, L)),  # link before <- joint at angle zero
-        ("leg_p0", "f8", (3, J, L)),  # joint origin, link before
-        ("leg_axis", "f8", (3, J, L)),  # link
-        ("leg_mass", "f8", (J, L)),
-        ("leg_com", "f8", (3, J, L)),  # link
-        ("leg_inertia", "f8", (6, J, L)),  # xx, yy, zz, xy, xz, yz about the centre of mass, link
-        ("leg_foot", "f8", (3, L)),  # ball centre, last link
-        ("leg_sensor", "f8", (3, 3, L)),  # rows: sensor x, y and axis, last link
-        ("leg_distal_kg", "f8", (L,)),
-        ("leg_distal", "f8", (3, L)),  # last link
-        ("leg_enc_sign", "f8", (J, L)),
-        ("leg_enc_off", "f8", (J, L)),
-        ("leg_M", "f8", (J, J, L)),  # actuator angles = M @ joint angles
-        ("leg_Minv", "f8", (J, J, L)),
-        ("leg_MinvT", "f8", (J, J, L)),
-        ("leg_motor", "i8", (J, L)),  # 1 where the actuator has a torque constant
-        ("leg_kt", "f8", (J, L)),
-        ("leg_kt_per_K", "f8", (J, L)),
-        ("leg_kt_C", "f8", (J, L)),  # temperature the torque constant holds for
-        ("leg_kt_u", "f8", (J, L)),  # relative standard uncertainty of the torque constant
-        ("leg_rotor", "f8", (J, L)),
-        ("leg_i0", "f8", (J, L)),
-        ("leg_i_sd", "f8", (J, L)),
-        ("leg_coulomb", "f8", (J, L)),
-        ("leg_extra", "f8", (J, L)),  # breakaway - Coulomb
-        ("leg_stribeck", "f8", (J, L)),  # 1 / Stribeck speed
-        ("leg_viscous", "f8", (J, L)),
-        ("leg_share", "f8", (J, L)),
-        ("leg_lag_s", "f8", (J, L)),
-        ("leg_ratio_0", "f8", (J, RATIO_NODES, L)),  # ratio at the nodes, and its slope times the node distance
-        ("leg_ratio_1", "f8", (J, RATIO_NODES, L)),
-        ("leg_node_0", "f8", (J, L)),  # angle of the first node
-        ("leg_node_step", "f8", (J, L)),
-        ("leg_varies", "i8", (1,)),  # 1 where any ratio varies
-        ("leg_unstick", "f8", (1,)),  # 1 / speed of the smooth step between stuck and moving
-        ("leg_stuck_sd", "f8", (1,)),  # friction error over its limit, stuck and moving
-        ("leg_moving_sd", "f8", (1,)),
-        ("leg_fric_tau_s", "f8", (1,)),
-        ("leg_dq_tau_s", "f8", (1,)),
-        ("leg_w_tau_s", "f8", (1,)),
-        ("leg_lead", "f8", (1,)),  # 1 undoes the lag of the derivative filters to first order
-        ("leg_imu_R", "f8", (3, 3)),  # body <- inertial unit
-        ("leg_imu_p", "f8", (3,)),
+        ("leg_link", "f8", (LINK_ROWS, J, L)),
+        ("leg_drive", "f8", (DRIVE_ROWS, J, L)),
+        ("leg_nodes", "f8", (2, RATIO_NODES, J, L)),  # of the ratio: values, and slopes times the node distance
+        ("leg_M", "f8", (2, J, J, L)),  # actuator angles = M @ joint angles, and its inverse
+        ("leg_foot", "f8", (FOOT_ROWS, L)),
+        ("leg_imu", "f8", (12,)),  # body <- inertial unit row by row, then its place in the body
+        ("leg_set", "f8", (SET_ROWS,)),
     ]
 
 

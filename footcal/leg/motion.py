@@ -12,84 +12,74 @@ from typing import Any
 import numpy as np
 from numba import njit
 
+from footcal.leg.fields import DQ_TAU_S, ENC_OFF, ENC_SIGN, HERE, LEAD, W_TAU_S
+
 STILL_AFTER_S = 0.05  # a joint not heard for longer is taken to stand still
 
 
 @njit(error_model="numpy")
 def read_joints(inp: Any, s: Any) -> None:
-    """Take new encoder readings: actuator angle, speed and acceleration; count the age of the others.
+    """Take new encoder readings: actuator angle and speed; count the age of the others.
 
-    A reading without a speed gets one from the angle. The filter starts afresh after a reset or a long silence.
+    A reading without a speed gets one from the angle. The derivative starts afresh after a reset or a long silence.
     """
     dt = s.dt_s[0]
-    tau = s.leg_dq_tau_s[0]
+    tau = s.leg_set[DQ_TAU_S]
     usual = np.exp(-dt / tau)
-    for j in range(s.leg_phi.shape[0]):
-        for k in range(s.leg_phi.shape[1]):
+    for k in range(s.leg_q.shape[1]):
+        worst = 0.0
+        for j in range(s.leg_q.shape[0]):
             age = s.leg_phi_age_s[j, k] + dt
-            s.leg_phi_age_s[j, k] = age
             reading = inp.q_rad[j, k]
             s.leg_gap_s[j, k] = 0.0
             if reading == reading:  # noqa: PLR0124
-                phi = s.leg_enc_sign[j, k] * (reading - s.leg_enc_off[j, k])
-                speed = s.leg_enc_sign[j, k] * inp.dq_rad_per_s[j, k]
-                if s.reset[0] != 0 or not (age > 0.0 and age <= STILL_AFTER_S):
-                    s.leg_on[j, k] = 0
+                sign = s.leg_drive[ENC_SIGN, j, k]
+                phi = sign * (reading - s.leg_drive[ENC_OFF, j, k])
+                speed = sign * inp.dq_rad_per_s[j, k]
+                starts = s.reset[0] != 0 or not (age > 0.0 and age <= STILL_AFTER_S)
                 if not speed == speed:  # noqa: PLR0124, SIM201
-                    speed = (phi - s.leg_phi[j, k]) / age if s.leg_on[j, k] != 0 else 0.0
-                s.leg_gap_s[j, k] = age if age > 0.0 else 1.0
+                    speed = 0.0 if starts else (phi - s.leg_phi[j, k]) / age
+                s.leg_starts[j, k] = 1.0 if starts else 0.0
+                s.leg_gap_s[j, k] = 1.0 if starts else age
                 s.leg_decay[j, k] = usual if age == dt else np.exp(-age / tau)
                 s.leg_phi[j, k] = phi
-                s.leg_act[j, k] = speed
-                s.leg_phi_age_s[j, k] = 0.0
+                s.leg_speed[j, k] = speed
+                age = 0.0
             elif age > STILL_AFTER_S:
                 s.leg_dphi[j, k] = 0.0
                 s.leg_ddphi[j, k] = 0.0
-
-
-@njit(error_model="numpy")
-def slope_joints(s: Any) -> None:
-    """Advance the derivative filter of every joint that was read."""
-    tau = s.leg_dq_tau_s[0]
-    for j in range(s.leg_phi.shape[0]):
-        for k in range(s.leg_phi.shape[1]):
-            if s.leg_gap_s[j, k] > 0.0:
-                v = s.leg_act[j, k]
-                if s.leg_on[j, k] == 0:
-                    s.leg_on[j, k] = 1
-                    s.leg_lp[j, k] = v
-                    s.leg_slope[j, k] = 0.0
-                    s.leg_slope_lp[j, k] = 0.0
-                    s.leg_ddphi[j, k] = 0.0
-                else:
-                    a = s.leg_decay[j, k]
-                    share = (1.0 - a) * tau / s.leg_gap_s[j, k]
-                    lp = a * s.leg_lp[j, k] + (1.0 - share) * v + (share - a) * s.leg_dphi[j, k]
-                    slope = (v - lp) / tau
-                    late = a * s.leg_slope_lp[j, k] + (1.0 - share) * slope + (share - a) * s.leg_slope[j, k]
-                    s.leg_lp[j, k] = lp
-                    s.leg_slope[j, k] = slope
-                    s.leg_slope_lp[j, k] = late
-                    s.leg_ddphi[j, k] = slope + s.leg_lead[0] * (slope - late)
-                s.leg_dphi[j, k] = v
-
-
-@njit(error_model="numpy")
-def joint_motion(s: Any) -> None:
-    """Turn actuator angles, speeds and accelerations into those of the joints: q = M^-1 phi."""
-    for k in range(s.leg_q.shape[1]):
+            s.leg_phi_age_s[j, k] = age
+            if s.leg_drive[HERE, j, k] > 0.0:
+                worst = max(worst, age)
         for j in range(s.leg_q.shape[0]):
-            q = 0.0
-            dq = 0.0
-            ddq = 0.0
-            for i in range(s.leg_q.shape[0]):
-                m = s.leg_Minv[j, i, k]
-                q += m * s.leg_phi[i, k]
-                dq += m * s.leg_dphi[i, k]
-                ddq += m * s.leg_ddphi[i, k]
-            s.leg_q[j, k] = q
-            s.leg_dq[j, k] = dq
-            s.leg_ddq[j, k] = ddq
+            s.leg_worst_s[j, k] = worst
+
+
+@njit(error_model="numpy")
+def slope_joints(s: Any, j: int) -> None:
+    """Advance the derivative filter of joint j wherever it was read; joint angles are the actuators' (see `coupling`)."""
+    tau, lead = s.leg_set[DQ_TAU_S], s.leg_set[LEAD]
+    for k in range(s.leg_q.shape[1]):
+        gap = s.leg_gap_s[j, k]
+        starts = s.leg_starts[j, k]
+        v = s.leg_speed[j, k]
+        a = s.leg_decay[j, k]
+        share = (1.0 - a) * tau / gap
+        lp = a * s.leg_lp[j, k] + (1.0 - share) * v + (share - a) * s.leg_dphi[j, k]
+        lp = v if starts > 0.0 else lp
+        slope = (v - lp) / tau
+        late = a * s.leg_slope_lp[j, k] + (1.0 - share) * slope + (share - a) * s.leg_slope[j, k]
+        late = 0.0 if starts > 0.0 else late
+        s.leg_lp[j, k] = lp if gap > 0.0 else s.leg_lp[j, k]
+        s.leg_slope[j, k] = slope if gap > 0.0 else s.leg_slope[j, k]
+        s.leg_slope_lp[j, k] = late if gap > 0.0 else s.leg_slope_lp[j, k]
+        dphi = v if gap > 0.0 else s.leg_dphi[j, k]
+        ddphi = slope + lead * (slope - late) if gap > 0.0 else s.leg_ddphi[j, k]
+        s.leg_dphi[j, k] = dphi
+        s.leg_ddphi[j, k] = ddphi
+        s.leg_q[j, k] = s.leg_phi[j, k]
+        s.leg_dq[j, k] = dphi
+        s.leg_ddq[j, k] = ddphi
 
 
 @njit(error_model="numpy")
@@ -102,7 +92,7 @@ def read_base(inp: Any, gravity: Any, s: Any) -> None:
     dt = s.dt_s[0]
     s.leg_gyro_age_s[0] += dt
     s.leg_accel_age_s[0] += dt
-    R = s.leg_imu_R
+    R = s.leg_imu
     gx, gy, gz = inp.gyro_rad_per_s[0], inp.gyro_rad_per_s[1], inp.gyro_rad_per_s[2]
     if gx + gy + gz == gx + gy + gz:  # noqa: PLR0124
         _slope_base(s.leg_gyro_age_s[0], gx, gy, gz, s)
@@ -115,7 +105,7 @@ def read_base(inp: Any, gravity: Any, s: Any) -> None:
     ax, ay, az = inp.accel_m_per_s2[0], inp.accel_m_per_s2[1], inp.accel_m_per_s2[2]
     if ax + ay + az == ax + ay + az:  # noqa: PLR0124
         for i in range(3):
-            s.leg_accel_I[i] = R[i, 0] * ax + R[i, 1] * ay + R[i, 2] * az
+            s.leg_accel_I[i] = R[3 * i] * ax + R[3 * i + 1] * ay + R[3 * i + 2] * az
         s.leg_accel_age_s[0] = 0.0
     if inp.quat_WB[0] == inp.quat_WB[0]:  # noqa: PLR0124
         for i in range(4):
@@ -128,12 +118,12 @@ def read_base(inp: Any, gravity: Any, s: Any) -> None:
 
 @njit(error_model="numpy")
 def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any) -> None:
-    tau = s.leg_w_tau_s[0]
+    tau = s.leg_set[W_TAU_S]
     a = np.exp(-gap / tau)
     share = (1.0 - a) * tau / gap
     starts = s.reset[0] != 0 or s.leg_gyro_on[0] == 0 or not (gap > 0.0 and gap <= STILL_AFTER_S)
     for i in range(3):
-        w = s.leg_imu_R[i, 0] * gx + s.leg_imu_R[i, 1] * gy + s.leg_imu_R[i, 2] * gz
+        w = s.leg_imu[3 * i] * gx + s.leg_imu[3 * i + 1] * gy + s.leg_imu[3 * i + 2] * gz
         if starts:
             s.leg_w_lp[i] = w
             s.leg_w_slope[i] = 0.0
@@ -146,14 +136,14 @@ def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any) -> None:
             s.leg_w_lp[i] = lp
             s.leg_w_slope[i] = slope
             s.leg_w_slope_lp[i] = late
-            s.leg_dw[i] = slope + s.leg_lead[0] * (slope - late)
+            s.leg_dw[i] = slope + s.leg_set[LEAD] * (slope - late)
         s.leg_w[i] = w
     s.leg_gyro_on[0] = 1
 
 
 @njit(error_model="numpy")
 def _move_to_origin(s: Any) -> None:
-    rx, ry, rz = s.leg_imu_p[0], s.leg_imu_p[1], s.leg_imu_p[2]
+    rx, ry, rz = s.leg_imu[9], s.leg_imu[10], s.leg_imu[11]
     wx, wy, wz = s.leg_w[0], s.leg_w[1], s.leg_w[2]
     ux, uy, uz = s.leg_dw[0], s.leg_dw[1], s.leg_dw[2]
     vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx

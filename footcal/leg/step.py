@@ -12,17 +12,12 @@ from numba import njit
 
 from footcal.leg.adopt import adopt
 from footcal.leg.chain import first_joint, foot_and_axis, jacobian, next_joint
-from footcal.leg.current import (
-    actuator_torques,
-    freshness,
-    joint_torques,
-    load_torque,
-    read_currents,
-    varying_ratio,
-)
+from footcal.leg.coupling import couple_load, couple_motion, couple_torques
+from footcal.leg.current import drive_torques, load_torque, read_currents, varying_ratio
 from footcal.leg.dynamics import below_sensor, first_link, hand_back, link_wrench, next_link, rigid_torques
 from footcal.leg.elementary import curves
-from footcal.leg.motion import joint_motion, read_base, read_joints, slope_joints
+from footcal.leg.fields import COUPLED, VARIES
+from footcal.leg.motion import read_base, read_joints, slope_joints
 
 
 @njit(error_model="numpy")
@@ -38,24 +33,30 @@ def leg_step(inp: Any, gravity: Any, s: Any, c: Any) -> None:
     """
     if s.leg_ready[0] == 0 or s.reset[0] != 0:
         adopt(s, c)
+    joints = s.leg_q.shape[0]
     read_base(inp, gravity, s)
     read_joints(inp, s)
-    slope_joints(s)
+    for j in range(joints):
+        slope_joints(s, j)
+    if s.leg_set[COUPLED] > 0.0:
+        couple_motion(s)
     posture(s)
     read_currents(inp, s)
-    if s.leg_varies[0] != 0:
+    if s.leg_set[VARIES] > 0.0:
         varying_ratio(s)
     load_torque(s)
-    actuator_torques(s)
-    joint_torques(s)
-    freshness(s)
+    if s.leg_set[COUPLED] > 0.0:
+        couple_load(s)
+    for j in range(joints):
+        drive_torques(s, j)
+    if s.leg_set[COUPLED] > 0.0:
+        couple_torques(s)
 
 
 @njit(error_model="numpy")
 def posture(s: Any) -> None:
     """From actuator angles, speeds and accelerations to geometry, rigid-body torques and inertia below the sensor."""
     joints = s.leg_q.shape[0]
-    joint_motion(s)
     for j in range(joints):
         curves(s, j)
     first_joint(s)
