@@ -196,6 +196,7 @@ def _sensor_model(file: CalibrationFile) -> SensorModel:
             relative=runtime.relative,
             moving=runtime.moving,
             noise=runtime.noise,
+            noise_interval_s=runtime.noise_interval_s,
             temp_C=runtime.temp_C,
             temp_absent_C=runtime.temp_absent_C,
             start=runtime.start,

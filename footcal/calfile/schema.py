@@ -79,8 +79,7 @@ class Input(Part):
     power_offset: Positive
     temp_ref_C: float
     thermometer_lag_s: NotNegative
-    lag_s: NotNegative = Field(description="first-order delay of the sensor, undone in the compensator")
-    lead_filter_s: Positive
+    lag_s: NotNegative = Field(description="first-order delay of sensor and amplifier, undone in the compensator")
 
 
 class Settle(Part):
@@ -169,6 +168,7 @@ class Runtime(Part):
     relative: NotNegative
     moving: NotNegative
     noise: NotNegative
+    noise_interval_s: NotNegative
     temp_C: NotNegative
     temp_absent_C: NotNegative
     start: NotNegative

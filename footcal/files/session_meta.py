@@ -28,6 +28,7 @@ class SessionMeta:
     capacity_N: float | None = None  # full scale of the sensor
     safe_limit_N: float | None = None  # beyond it the sensor may be damaged
     raw_max: float | None = None  # top of the converter, counts
+    lag_s: float | None = None  # first-order delay of sensor and amplifier, from their data sheets
     mount: str | None = None  # foot_up, foot_down, side, angle
     mount_angle_rad: float | None = None  # sensor axis (sole to leg) from straight up, where mount is "angle"
     mass_below_sensor_kg: float | None = None
@@ -118,6 +119,7 @@ _CHECKS: Final[Mapping[str, Callable[[Any], Any]]] = {
     "capacity_N": _POSITIVE,
     "safe_limit_N": _POSITIVE,
     "raw_max": _POSITIVE,
+    "lag_s": _AT_LEAST_0,
     "mount": _one_of(MOUNTS),
     "mount_angle_rad": _number(-math.inf, above=False),
     "mass_below_sensor_kg": _AT_LEAST_0,

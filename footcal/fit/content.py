@@ -10,13 +10,12 @@ import numpy as np
 from footcal import __version__
 from footcal.fit.choose import Candidate
 from footcal.fit.inputs import FitInput
+from footcal.fit.outcome import FitOutcome
 from footcal.fit.rows import Rows
-from footcal.fit.set_aside import Aside
 from footcal.fit.trust import DAY_SPAN, DAY_ZERO
 from footcal.records import FloatArray
 from footcal.sensor.creep import CREEP_TAU_S
 from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
-from footcal.sensor.lag import LEAD_FILTER_S
 from footcal.sensor.model import CREEPS, FEATURES, PLAYS, PLAYS_BY_LOAD, RuntimeUncertainty
 from footcal.sensor.transform import POWER_OFFSET
 
@@ -24,16 +23,10 @@ CROSS_AXIS_DEFAULT: Final = {"cell": 0.01, "resistive": 0.03, "magnetic": 0.03, 
 UNLOAD_DECAY_S: Final = 6.0
 
 
-def calibration_content(
-    data: FitInput,
-    best: Candidate,
-    rows: Rows,
-    asides: list[Aside],
-    uncertainty: RuntimeUncertainty,
-    covariance: FloatArray,
-    notes: list[str],
-) -> dict[str, Any]:
+def calibration_content(outcome: FitOutcome) -> dict[str, Any]:
     """Return everything the calibration file holds but its digest, as plain JSON values."""
+    data, best, rows = outcome.data, outcome.best, outcome.rows
+    uncertainty, covariance = outcome.uncertainty, outcome.covariance
     low_N, high_N = float(rows.target.min()) * data.capacity_N, float(rows.target.max()) * data.capacity_N
     cycles, loads, pump = best.left_out.rms_percent()
     now = dt.datetime.now(dt.UTC).isoformat(timespec="seconds")
@@ -53,7 +46,7 @@ def calibration_content(
             "force_min_N": min(low_N, 0.0),
             "force_max_N": high_N,
             **_temperature_range(data),
-            "dynamic": is_dynamic(data),
+            "dynamic": outcome.dynamic,
         },
         "figures": {"cycles": cycles, "loads": loads, "pump": pump},
         "set_aside": [
@@ -64,25 +57,30 @@ def calibration_content(
                 "entered_kg": _finite(data.holds[aside.hold].mass_kg),
                 "fits_kg": aside.fits_kg,
             }
-            for aside in asides
+            for aside in outcome.asides
         ],
-        "clock_offset_s": None,
+        "clock_offset_s": outcome.aligned.offset_s if outcome.aligned else None,
         "uncertainty": {
             "runtime": {**{name: getattr(uncertainty, name) for name in _RUNTIME}, "rows": uncertainty.rows.tolist()},
             "budget": _budget(data, best, rows, uncertainty, covariance),
             "curve": uncertainty_curve(data, best, rows, uncertainty),
         },
         "history": [{"date_utc": _start(data) or now, "zero_N": 0.0, "span_pct": 0.0, "note": "as calibrated"}],
-        "notes": notes,
+        "notes": list(outcome.notes),
     }
 
 
-_RUNTIME: Final = ("fixed", "relative", "moving", "noise", "temp_C", "temp_absent_C", "start", "beyond")
-
-
-def is_dynamic(data: FitInput) -> bool:
-    """Return whether quick data were fitted: at least four quick lifts, or pump rows."""
-    return sum(hold.kind == "quick" for hold in data.holds) >= 4 or bool(data.rows.pump.any())
+_RUNTIME: Final = (
+    "fixed",
+    "relative",
+    "moving",
+    "noise",
+    "noise_interval_s",
+    "temp_C",
+    "temp_absent_C",
+    "start",
+    "beyond",
+)
 
 
 def unload_share(best: Candidate, rows: Rows, data: FitInput) -> float:
@@ -127,8 +125,7 @@ def _input(data: FitInput, best: Candidate) -> dict[str, Any]:
         "power_offset": POWER_OFFSET,
         "temp_ref_C": data.temp_ref_C,
         "thermometer_lag_s": 2.0,
-        "lag_s": 0.0,
-        "lead_filter_s": LEAD_FILTER_S,
+        "lag_s": data.lag_s,
     }
 
 

@@ -57,7 +57,7 @@ def coefficient_covariance(fitted: Fitted, rows: Rows, left_out_cycles: FloatArr
     pump = rows.pump
     if pump.any():
         normal += _pump_information(columns[pump], fitted.residual[pump], fitted.scale[pump][0])
-    covariance = np.linalg.inv(0.5 * (normal + normal.T))
+    covariance = np.asarray(np.linalg.inv(0.5 * (normal + normal.T)), dtype=np.float64)
     covariance *= _hold_scale(columns, rows, left_out_cycles, covariance, place)
     full = np.zeros((N_FEATURES, N_FEATURES))
     full[np.ix_(active, active)] = 0.5 * (covariance + covariance.T)

@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import replace
 from typing import Final
+
+import numpy as np
 
 from footcal.calfile import Calibration
 from footcal.errors import FitRefusedError
@@ -13,30 +15,19 @@ from footcal.fit.choose import Candidate, choose_terms
 from footcal.fit.content import calibration_content
 from footcal.fit.inputs import FitInput, read_input
 from footcal.fit.leave_out import leave_out
-from footcal.fit.passes import fit_terms
-from footcal.fit.rows import Rows
+from footcal.fit.outcome import FitOutcome, FitResult
+from footcal.fit.passes import Fitted, fit_terms
+from footcal.fit.reference import Aligned, align, gain_and_zero, reference_signal
+from footcal.fit.rows import Rows, join_rows, pump_rows
 from footcal.fit.set_aside import Aside, bad_holds
 from footcal.fit.shape import check_shape
 from footcal.fit.terms import Terms
 from footcal.fit.trust import runtime_uncertainty
-from footcal.records import FloatArray
-from footcal.sensor.model import RuntimeUncertainty
 
 ROUNDS: Final = 4  # of fitting and setting aside
+MOST_ASIDE: Final = 0.3  # of all steps
 
-
-@dataclass(frozen=True, slots=True)
-class FitResult:
-    """A finished fit."""
-
-    data: FitInput
-    best: Candidate
-    rows: Rows  # those fitted
-    asides: tuple[Aside, ...]
-    uncertainty: RuntimeUncertainty
-    covariance: FloatArray
-    calibration: Calibration
-    notes: tuple[str, ...] = field(default=())
+__all__ = ["FitOutcome", "FitResult", "fit_sessions"]
 
 
 def fit_sessions(
@@ -62,21 +53,18 @@ def fit_sessions(
         FitRefusedError: the data were read, but no sound model follows from them.
     """
     data = read_input(sessions, kind=kind, capacity_N=capacity_N, raw_max=raw_max)
-    rows, asides = _without_bad_steps(data)
+    middling, rows, asides = _without_bad_steps(data)
+    aligned, pump = _with_reference(data, middling)
     best = choose_terms(
         data.channel,
         data.reading,
-        rows,
+        join_rows([rows, pump]) if pump else rows,
         kind=data.kind,
         levels=data.levels,
         temperatures=data.temperatures,
         on_try=on_try,
     )
-    more = bad_holds(best.fitted, rows, list(data.holds), data.capacity_N, data.place.gravity_m_per_s2)
-    if more:
-        rows = rows.without_holds({aside.hold for aside in more})
-        fitted = fit_terms(data.channel, data.reading, rows, best.fitted.terms)
-        best, asides = Candidate(fitted, leave_out(fitted, rows)), [*asides, *more]
+    best, rows, asides = _looked_at_again(data, best, rows, pump, asides)
     check_shape(best.fitted, data.foot_id)
     uncertainty, covariance = runtime_uncertainty(
         best,
@@ -86,54 +74,86 @@ def fit_sessions(
         temperature_known=best.fitted.terms.temperature,
         reference_relative=data.place.gravity_u_m_per_s2 / data.place.gravity_m_per_s2,
     )
-    notes = _notes(data, best)
-    content = calibration_content(data, best, rows, asides, uncertainty, covariance, notes)
-    return FitResult(
-        data, best, rows, tuple(asides), uncertainty, covariance, Calibration.from_content(content), tuple(notes)
-    )
+    notes = tuple(_notes(data, best, aligned))
+    outcome = FitOutcome(data, best, rows, tuple(asides), aligned, uncertainty, covariance, notes)
+    return FitResult(outcome, Calibration.from_content(calibration_content(outcome)))
 
 
-def _without_bad_steps(data: FitInput) -> tuple[Rows, list[Aside]]:
-    """Fit a middling choice of terms and set aside what does not fit it, until nothing more is found."""
-    levels = data.levels
-    degree = max(1, min(3 if data.kind == "cell" else 4, levels - 2))
-    terms = Terms(
-        degree=degree,
+def _middling_terms(data: FitInput) -> Terms:
+    """A choice of terms that serves to find bad steps before the real choice is made."""
+    return Terms(
+        degree=max(1, min(3 if data.kind == "cell" else 4, data.levels - 2)),
         gamma=0.5 if data.kind == "resistive" else 1.0,
         temperature=data.temperatures > 1,
         curved_temperature=data.temperatures > 2,
     )
-    rows, asides = data.rows, []
+
+
+def _without_bad_steps(data: FitInput) -> tuple[Fitted, Rows, list[Aside]]:
+    """Fit a middling choice of terms and set aside what does not fit it, until nothing more is found."""
+    terms, rows = _middling_terms(data), data.rows
+    asides: list[Aside] = []
     for _ in range(ROUNDS):
         fitted = fit_terms(data.channel, data.reading, rows, terms)
-        found = bad_holds(fitted, rows, list(data.holds), data.capacity_N, data.place.gravity_m_per_s2)
+        found = bad_holds(fitted, rows, data.holds, data.capacity_N, data.place.gravity_m_per_s2)
         if not found:
             break
         asides += found
         rows = rows.without_holds({aside.hold for aside in found})
-    if len(asides) > 0.3 * len(data.holds):
+    if len(asides) > MOST_ASIDE * len(data.holds):
         raise FitRefusedError(
             data.foot_id,
             f"{len(asides)} of {len(data.holds)} steps do not fit the rest",
             "Check masses, times and the fixture, and run the session again.",
         )
-    return rows, asides
+    return fitted, rows, asides
 
 
-def _notes(data: FitInput, best: Candidate) -> list[str]:
+def _with_reference(data: FitInput, fitted: Fitted) -> tuple[Aligned | None, Rows | None]:
+    """Join the reference cell's clock to the foot's and return the rows of the pump recording.
+
+    A good cell judges the reference's gain and zero better than its sheet does, so they are taken from the fit to the
+    masses; a pad does not, and its reference stands as it is.
+    """
+    signal = reference_signal(data.channel, list(data.sessions))
+    if signal is None:
+        return None, None
+    reading = fitted.apparent * data.capacity_N
+    aligned = align(data.channel, reading, signal, data.lag_s)
+    force_N = aligned.force_N
+    if data.kind == "cell":
+        known = np.isfinite(force_N) & (np.abs(force_N) < 2.0 * data.capacity_N)
+        gain, zero_N = gain_and_zero(reading[known], force_N[known])
+        force_N = (force_N - zero_N) / gain
+    pump = pump_rows(data.channel, list(signal.windows_s), force_N, data.capacity_N)
+    return replace(aligned, force_N=force_N), pump if len(pump.start) else None
+
+
+def _looked_at_again(
+    data: FitInput, best: Candidate, rows: Rows, pump: Rows | None, asides: list[Aside]
+) -> tuple[Candidate, Rows, list[Aside]]:
+    """Set aside what only the chosen terms show to be off, and fit a last time."""
+    together = join_rows([rows, pump]) if pump else rows
+    more = bad_holds(best.fitted, together, data.holds, data.capacity_N, data.place.gravity_m_per_s2)
+    if not more:
+        return best, together, asides
+    together = together.without_holds({aside.hold for aside in more})
+    fitted = fit_terms(data.channel, data.reading, together, best.fitted.terms)
+    return Candidate(fitted, leave_out(fitted, together)), together, [*asides, *more]
+
+
+def _notes(data: FitInput, best: Candidate, aligned: Aligned | None) -> list[str]:
     """Say what the sessions could not tell, and what was assumed."""
     notes = list(data.assumed)
     if not data.channel.has_temperature:
         notes.append("no temperature was recorded: zero and span against temperature are not corrected")
     elif data.temperatures < 2:
         notes.append("no temperature change: zero and span against temperature are a guess")
-    if not any(hold.kind == "quick" for hold in data.holds) and not best.fitted.terms.creep:
-        notes.append("no quick lifts: the reading while walking was not tested")
+    if not any(hold.kind == "quick" for hold in data.holds) and aligned is None:
+        notes.append("no quick lifts and no pump recording: the reading while walking was not tested")
     dwell_s = max(hold.t_end_s - hold.t_load_s for hold in data.holds)
     if best.fitted.terms.creep and dwell_s < 60.0:
-        notes.append(
-            f"the longest dwell was {dwell_s:.0f} s: creep over minutes is extrapolated by the smooth spectrum"
-        )
+        notes.append(f"longest dwell {dwell_s:.0f} s: creep over minutes is extrapolated by the smooth spectrum")
     if data.channel.spikes_s:
         notes.append(f"{len(data.channel.spikes_s)} lone spikes in the readings were taken out")
     return notes

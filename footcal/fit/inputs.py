@@ -35,6 +35,7 @@ class FitInput:
     temp_ref_C: float
     temperatures: int
     assumed: tuple[str, ...]
+    lag_s: float  # first-order delay of the sensor, as stated
 
     @property
     def levels(self) -> int:
@@ -77,6 +78,7 @@ def read_input(
         temp_ref_C=temp_ref_C,
         temperatures=temperatures,
         assumed=(*places[0].assumed, *form.assumed),
+        lag_s=sessions[0].meta.lag_s or 0.0,
     )
 
 

@@ -36,6 +36,7 @@ class Reading:
     u_span: float
     noise: float  # smallest scale a residual can have, share of full scale
     sample_noise: float  # standard deviation of one sample, share of full scale
+    interval_s: float  # usual sample interval
 
 
 @dataclass(frozen=True, slots=True)

@@ -94,6 +94,7 @@ def reading_of(channel: Channel, rows: Rows, holds: list[Hold], form: RawForm, t
         u_span=u_zero + sign * reach,
         noise=0.3 * noise / np.sqrt(samples_per_row),
         sample_noise=noise,
+        interval_s=float(np.median(np.diff(channel.t_s))),
     )
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -59,7 +60,9 @@ def expected_sd(errors: HoldErrors) -> FloatArray:
     return np.maximum(np.hypot(fixed, 0.5 * rise * errors.load), 0.5 * overall)
 
 
-def bad_holds(fitted: Fitted, rows: Rows, holds: list[Hold], capacity_N: float, gravity_m_per_s2: float) -> list[Aside]:
+def bad_holds(
+    fitted: Fitted, rows: Rows, holds: Sequence[Hold], capacity_N: float, gravity_m_per_s2: float
+) -> list[Aside]:
     """Return the holds whose mean is off by more than 5 robust standard deviations, or that moved inside the window."""
     errors = hold_errors(fitted, rows)
     sd = np.maximum(expected_sd(errors), SMALLEST_SHARE / OFF_BY_SD)

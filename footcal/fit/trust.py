@@ -82,6 +82,7 @@ def runtime_uncertainty(
             ),
             moving=moving,
             noise=reading.sample_noise,
+            noise_interval_s=reading.interval_s,
             start=loop + 0.3 * float(np.sum(np.abs(gains[CREEPS]))),
         ),
         covariance,

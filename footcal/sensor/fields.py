@@ -10,10 +10,12 @@ from footcal.records import NS_PER_S, Health
 from footcal.sensor.creep import CREEP_TAU_S, N_CREEP
 from footcal.sensor.curve import N_POWERS
 from footcal.sensor.hysteresis import N_PLAY, PLAY_HALF_WIDTH
-from footcal.sensor.lag import LEAD_FILTER_S
+from footcal.sensor.lag import noise_gain
 from footcal.sensor.model import N_FEATURES, N_UNCERTAINTY_ROWS, SensorModel
 from footcal.sensor.temperature import N_TEMPERATURE
 from footcal.sensor.transform import WIRINGS
+
+FASTEST_CHANNEL_S = 0.001  # the lead gain is stated for the robot's usual channel
 
 Field = tuple[str, str, tuple[int, ...]]
 
@@ -30,7 +32,7 @@ def sensor_state_fields(legs: int) -> list[Field]:
         ("sen_tare_raw", "f8", (legs,)),  # counts taken from every reading
         ("sen_raw", "f8", (legs,)),  # last raw reading taken as real
         ("sen_held_raw", "f8", (legs,)),  # reading held back as a possible spike; NaN when none
-        ("sen_lead_raw", "f8", (legs,)),  # lag filter
+        ("sen_undone_raw", "f8", (legs,)),  # last reading with the lag undone
         ("sen_temp_C", "f8", (legs,)),  # lagged temperature; NaN until one was read
         ("sen_temp_ns", "i8", (legs,)),
         ("sen_v", "f8", (legs,)),
@@ -63,7 +65,6 @@ def sensor_constant_fields(legs: int) -> list[Field]:
         ("sen_temp_ref_C", "f8", (legs,)),
         ("sen_temp_lag_s", "f8", (legs,)),
         ("sen_lag_s", "f8", (legs,)),
-        ("sen_lead_s", "f8", (legs,)),
         ("sen_b", "f8", (N_POWERS, legs)),
         ("sen_bt", "f8", (N_TEMPERATURE, legs)),
         ("sen_g", "f8", (N_CREEP, legs)),
@@ -75,6 +76,8 @@ def sensor_constant_fields(legs: int) -> list[Field]:
         ("sen_u_relative", "f8", (legs,)),
         ("sen_u_moving_N", "f8", (legs,)),
         ("sen_u_noise_N", "f8", (legs,)),
+        ("sen_noise_s", "f8", (legs,)),
+        ("sen_lead_gain", "f8", (legs,)),
         ("sen_u_temp_C", "f8", (legs,)),
         ("sen_u_absent_C", "f8", (legs,)),
         ("sen_u_start_N", "f8", (legs,)),
@@ -105,7 +108,6 @@ def fill_sensor_constants(model: SensorModel | None, c: Any, lane: int) -> None:
     c["sen_capacity_N"][..., lane] = c["sen_u_span"][..., lane] = c["sen_gamma"][..., lane] = 1.0
     c["sen_tau_s"][..., lane] = CREEP_TAU_S
     c["sen_h"][..., lane] = PLAY_HALF_WIDTH
-    c["sen_lead_s"][..., lane] = LEAD_FILTER_S
     if model is None:
         c["sen_base_flags"][..., lane] = int(Health.UNCALIBRATED)
         return
@@ -133,6 +135,8 @@ def fill_sensor_constants(model: SensorModel | None, c: Any, lane: int) -> None:
         "sen_u_relative": unc.relative,
         "sen_u_moving_N": unc.moving * full_scale_N,
         "sen_u_noise_N": unc.noise * full_scale_N,
+        "sen_noise_s": unc.noise_interval_s,
+        "sen_lead_gain": noise_gain(model.lag_s, FASTEST_CHANNEL_S),
         "sen_u_temp_C": unc.temp_C,
         "sen_u_absent_C": unc.temp_absent_C,
         "sen_u_start_N": unc.start * full_scale_N,

@@ -10,7 +10,7 @@ from numba import njit
 from footcal.sensor.creep import hold_factors, lag_step
 from footcal.sensor.curve import quintic, quintic_slope
 from footcal.sensor.hysteresis import play_step
-from footcal.sensor.lag import lead_step
+from footcal.sensor.lag import undo_lag
 from footcal.sensor.temperature import temperature_terms, theta_of
 from footcal.sensor.transform import arm_ratio, arm_ratio_slope, bend, bend_slope
 
@@ -98,13 +98,12 @@ def _take_reading(t_ns: int, raw_in: float, s: Any, c: Any, k: int) -> None:
     if not fresh and _is_spike(raw, dt_ns * 1e-9, s, c, k):
         s.axial_flags[k] = flags | SPIKE
         return
+    raw_old = s.sen_raw[k]
     s.sen_raw[k] = raw
-    if fresh:
-        s.sen_lead_raw[k] = raw
-    elif c.sen_lag_s[k] > 0.0 and dt_ns < 3_333_334:
-        a = np.exp(-dt_ns * 1e-9 / c.sen_lead_s[k])
-        s.sen_lead_raw[k] = raw + a * (s.sen_lead_raw[k] - raw)
-        raw = lead_step(s.sen_lead_raw[k], raw, c.sen_lag_s[k], c.sen_lead_s[k])
+    if not fresh and c.sen_lag_s[k] > 0.0 and dt_ns < 3_333_334:
+        a, phi = hold_factors(dt_ns * 1e-9, c.sen_lag_s[k])
+        raw = undo_lag(raw, raw_old, s.sen_undone_raw[k], a, phi)
+    s.sen_undone_raw[k] = raw
     known_C = s.sen_temp_C[k]
     theta = theta_of(known_C, c.sen_temp_ref_C[k]) if known_C == known_C else 0.0  # noqa: PLR0124
     _apparent(raw, theta, s, c, k)
@@ -197,6 +196,16 @@ def write_features(v: float, theta: float, s: Any, c: Any, k: int) -> None:
 
 
 @njit(error_model="numpy")
+def _noise_share(s: Any, c: Any, k: int) -> float:
+    """Variance of one sample over that at the bench's rate: white noise, averaged over the interval, lag undone."""
+    dt_ns = s.sen_dt_ns[k]
+    if dt_ns <= 0 or c.sen_noise_s[k] <= 0.0:
+        return 1.0
+    share: float = min(c.sen_noise_s[k] * 1e9 / dt_ns, 100.0)
+    return share * c.sen_lead_gain[k] ** 2 if dt_ns < 3_333_334 else share
+
+
+@njit(error_model="numpy")
 def _force(theta: float, known_C: float, flags: int, s: Any, c: Any, k: int) -> None:
     """Force, its standard uncertainty and the flags, from the features."""
     total = 0.0
@@ -218,7 +227,8 @@ def _force(theta: float, known_C: float, flags: int, s: Any, c: Any, k: int) -> 
     has_temp = known_C == known_C  # noqa: PLR0124
     temp_u_C = c.sen_u_temp_C[k] if has_temp else c.sen_u_absent_C[k]
     u2 = full_scale_N * full_scale_N * (fitted + (by_theta * temp_u_C / 16.0) ** 2)
-    u2 += c.sen_u_fixed_N[k] ** 2 + (c.sen_u_relative[k] * force_N) ** 2 + c.sen_u_noise_N[k] ** 2
+    u2 += c.sen_u_fixed_N[k] ** 2 + (c.sen_u_relative[k] * force_N) ** 2
+    u2 += c.sen_u_noise_N[k] ** 2 * _noise_share(s, c, k)
     if abs(s.sen_phi[24, k]) > c.sen_tau_s[1, k]:  # creep feature of some 30 ms over its time constant: above 1 FS/s
         u2 += c.sen_u_moving_N[k] ** 2
     margin_N = 0.02 * full_scale_N

@@ -48,7 +48,10 @@ class RuntimeUncertainty:
     fixed: float = 0.0  # of full scale: left over between cycles, zero return
     relative: float = 0.0  # of force: left over between load levels, reference masses, span between days
     moving: float = 0.0  # of full scale, added above 1 FS/s
-    noise: float = 0.0  # of full scale, one sample, lead gain included
+    noise: float = 0.0  # of full scale, one sample of the bench session
+    noise_interval_s: float = (
+        0.0  # sample interval of that session; a faster channel is noisier by the root of the ratio
+    )
     temp_C: float = 0.3  # standard uncertainty of the temperature while a thermometer reads
     temp_absent_C: float = 10.0  # the same without a thermometer: half range over root 3
     start: float = 0.0  # of full scale, until the start state is forgotten

@@ -43,6 +43,7 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
     angle_rad = rng.uniform(0.0, 2.0 * np.pi)
     cross = rng.uniform(*CROSS_RANGE)
     mechanics = _draw_mechanics(sheet, rng)
+    lag_s = float(rng.uniform(0.1e-3, 0.3e-3) if sheet.transducer == "cell" else rng.uniform(0.3e-3, 1.2e-3))
     span_per_K, zero_per_K = _temperature(sheet.span_pct_per_K, rng), _temperature(sheet.zero_pct_per_K, rng)
     return SimulatedSensor(
         kind=letter,
@@ -53,7 +54,7 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
         span_per_K=(span_per_K[0] - mechanics.span_per_K(), span_per_K[1]),  # warm creep is faster and adds its own
         zero_per_K=zero_per_K,
         curve=_CURVES[sheet.transducer](sheet, mechanics.middle(), rng),
-        lag_s=float(rng.uniform(0.3e-3, 1.2e-3)),
+        lag_s=float(rng.uniform(0.1e-3, 0.5e-3)),
         thermal_lag_s=30.0 * _scatter(rng, 0.15),
         noise=Noise(total=sheet.noise_pct / 100.0 * _scatter(rng, 0.1), flicker_share=0.06, hum_share=sheet.hum_share),
         supply_share=0.02e-2 if sheet.transducer == "resistive" else 0.0,

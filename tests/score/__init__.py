@@ -1,0 +1,1 @@
+"""Accuracy on fresh seeds: `make score`."""
