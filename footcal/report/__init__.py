@@ -1,1 +1,1 @@
-"""footcal."""
+"""Pictures as plain functions of arrays, and the HTML reports made of them."""
