@@ -231,7 +231,6 @@ def session_meta(
         "safe_limit_N": 1.5 * sensor.capacity_N,
         "raw_max": sensor.raw_max,
         "lag_s": sensor.stated_lag_s,
-        "lag_s": round(sensor.lag_s, 5),  # as the maker's sheet says: to ten microseconds
         "mount": mount,
         "mass_below_sensor_kg": mass_below_kg,
         "gravity_m_per_s2": box.gravity_m_per_s2,

@@ -50,6 +50,7 @@ class SimulatedSensor:
     zero_per_K: tuple[float, float]  # linear and quadratic, share of full output
     curve: Bridge | Divider | Magnet | Capacitor
     lag_s: float  # electronics
+    stated_lag_s: float  # what the data sheet says of it
     thermal_lag_s: float  # sensing element behind the thermometer
     noise: Noise
     supply_share: float  # slow wander of supply against reference, rms

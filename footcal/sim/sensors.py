@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Final, get_args
+from typing import Final
 
 import numpy as np
 
@@ -43,7 +43,7 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
     angle_rad = rng.uniform(0.0, 2.0 * np.pi)
     cross = rng.uniform(*CROSS_RANGE)
     mechanics = _draw_mechanics(sheet, rng)
-    lag_s = float(rng.uniform(0.1e-3, 0.3e-3) if sheet.transducer == "cell" else rng.uniform(0.3e-3, 1.2e-3))
+    lag_s = float(rng.uniform(0.1e-3, 0.5e-3))
     span_per_K, zero_per_K = _temperature(sheet.span_pct_per_K, rng), _temperature(sheet.zero_pct_per_K, rng)
     return SimulatedSensor(
         kind=letter,
@@ -54,7 +54,8 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
         span_per_K=(span_per_K[0] - mechanics.span_per_K(), span_per_K[1]),  # warm creep is faster and adds its own
         zero_per_K=zero_per_K,
         curve=_CURVES[sheet.transducer](sheet, mechanics.middle(), rng),
-        lag_s=float(rng.uniform(0.1e-3, 0.5e-3)),
+        lag_s=lag_s,
+        stated_lag_s=round(lag_s * _scatter(rng, 0.04), 5),  # a data sheet is good to some percent
         thermal_lag_s=30.0 * _scatter(rng, 0.15),
         noise=Noise(total=sheet.noise_pct / 100.0 * _scatter(rng, 0.1), flicker_share=0.06, hum_share=sheet.hum_share),
         supply_share=0.02e-2 if sheet.transducer == "resistive" else 0.0,
@@ -63,11 +64,8 @@ def draw_sensor(kind: str, rng: np.random.Generator, capacity_N: float | None = 
 
 
 def _letter(kind: str) -> Kind:
-    for letter in get_args(Kind):
-        if kind == letter:
-            return letter
-    for name, letter in TYPICAL.items():
-        if kind == name:
+    for letter in SHEETS:
+        if kind in {letter, *(name for name, typical in TYPICAL.items() if typical == letter)}:
             return letter
     raise SettingError(
         where="draw_sensor, kind",

