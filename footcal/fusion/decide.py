@@ -76,5 +76,7 @@ def decide(s: Any, c: Any) -> None:
                 wait_s = c.fil_early_off_s[0]
             if (t_ns - s.fil_pending_ns[l]) * 1e-9 >= wait_s - 1e-9:
                 _settle(1 if on else 0, s.fil_pending_ns[l], l, s)
+        if s.fil_decided[l] == 0:
+            s.fil_contact[l] = 1 if p > 0.5 else 0
         s.fil_p[l] = p
         s.fil_known[l] = 1 if s.fil_decided[l] == 1 and _known(l, s, c) else 0

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, fields
-from typing import Final
+from typing import Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -108,3 +108,20 @@ def join_columns(parts: list[EstimateColumns]) -> EstimateColumns:
         if field.name != "legs" and getattr(parts[0], field.name) is not None
     }
     return EstimateColumns(legs=parts[0].legs, **arrays)
+
+
+def columns_from_table(legs: tuple[str, ...], table: Mapping[str, FloatArray | IntArray]) -> EstimateColumns:
+    """Return columns from the file form, the inverse of `EstimateColumns.table`.
+
+    Args:
+        legs: names in the order wanted.
+        table: `t_s` and every `<leg>.<name>`, each (n,).
+    """
+    parts: dict[str, list[FloatArray | IntArray]] = {}
+    for name, (field, _) in LEG_COLUMNS.items():
+        kind = np.int64 if name in WHOLE_NUMBERS else np.float64
+        parts.setdefault(field, []).append(np.stack([table[f"{leg}.{name}"] for leg in legs], axis=1).astype(kind))
+    arrays: dict[str, Any] = {
+        field: stacks[0] if len(stacks) == 1 else np.stack(stacks, axis=2) for field, stacks in parts.items()
+    }
+    return EstimateColumns(legs=legs, t_s=np.asarray(table["t_s"], dtype=np.float64), **arrays)

@@ -259,6 +259,8 @@ def _predict_covariances(s: Any) -> None:
             P[p, f] += s.fil_force_q[p, f]
         for k in range(joints):
             P[(3 + k) * (4 + k) // 2 + 3 + k, f] += s.fil_fric_q[k, f]
+            m = first + k
+            P[m * (m + 1) // 2 + m, f] += s.fil_tau_q[k, f]
         P[n * (n + 1) // 2 - 1, f] += s.fil_e_q[f]
 
 

@@ -50,6 +50,9 @@ class FusionSettings:
     residual_part: float = 0.7  # of the calibration's variance that is slow (state e), the rest is white
     residual_min_share: float = 0.001
     reading_min_share: float = 0.002  # white noise is never taken as smaller
+    # torques: what inertia and friction ask for is known no better than its timing
+    torque_timing_s: float = 0.003
+    torque_timing_tau_s: float = 0.005
     # decision
     on_p: float = 0.9
     off_p: float = 0.1
@@ -95,7 +98,7 @@ class FusionSettings:
             raise _bad("off_p", self.off_p, f"below on_p = {self.on_p:g}")
 
 
-_POSITIVE = ("swing_tau_s", "moving_tau_s", "peak_tau_s", "residual_tau_s", "zero_tau_s", "noisy_tau_s", "stance_cost_share")
+_POSITIVE = ("swing_tau_s", "moving_tau_s", "peak_tau_s", "residual_tau_s", "zero_tau_s", "noisy_tau_s", "stance_cost_share", "torque_timing_tau_s")
 _SHARES_OF_ONE = ("touchdown_up_part", "lift_reset", "mode_floor", "residual_part", "on_p", "off_p", "zero_p")
 
 
@@ -199,6 +202,8 @@ def _fill_plain(settings: FusionSettings, c: np.record) -> None:
         "fil_zero_wait_s": settings.zero_wait_s,
         "fil_zero_tau_s": settings.zero_tau_s,
         "fil_start_Nm": settings.start_torque_sd_Nm,
+        "fil_timing_s": settings.torque_timing_s,
+        "fil_timing_tau_s": settings.torque_timing_tau_s,
         "fil_stuck_s": settings.stuck_s,
         "fil_stuck_ratio": settings.stuck_ratio,
         "fil_silent_s": settings.silent_s,

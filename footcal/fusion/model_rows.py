@@ -77,6 +77,29 @@ def _force_rows(s: Any, c: Any) -> None:
 
 
 @njit(error_model="numpy")
+def _timing_rows(s: Any, c: Any) -> None:
+    """Process noise of the motor torques: a sharp change of what the model asks for may come some ms early or late.
+
+    Impacts and turning joints change inertia and friction torques within some ms, and the derivative filters behind them
+    know the instant no better; without this term each touchdown leaves a side force that is not there.
+    """
+    dt = s.dt_s[0]
+    legs = s.axial_N.shape[0]
+    joints = s.tau_new.shape[0]
+    fade = exp(-dt / c.fil_timing_tau_s[0])
+    rate = c.fil_timing_s[0] / dt if dt > 0.0 and s.reset[0] == 0 else 0.0
+    for k in range(joints):
+        for l in range(legs):
+            asked = s.tau_rigid_Nm[k, l] + s.tau_drive_Nm[k, l]
+            jitter = max(fade * s.fil_jitter_Nm[k, l], rate * abs(asked - s.fil_asked_Nm[k, l]))
+            s.fil_jitter_Nm[k, l] = jitter
+            s.fil_asked_Nm[k, l] = asked
+            for mode in range(3):
+                f = mode * legs + l
+                s.fil_tau_q[k, f] = (s.fil_lag[k, f] * jitter) ** 2
+
+
+@njit(error_model="numpy")
 def _joint_rows(s: Any) -> None:
     dt = s.dt_s[0]
     legs = s.axial_N.shape[0]
@@ -125,6 +148,7 @@ def model_rows(s: Any, c: Any) -> None:
     """Write all work rows of the tick from the shared leg fields, the attitude and the trusted readings."""
     _force_rows(s, c)
     _joint_rows(s)
+    _timing_rows(s, c)
     _sensor_rows(s, c)
 
 
