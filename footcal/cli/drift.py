@@ -90,13 +90,13 @@ def _print_added(checks: Sequence[NewCheck], new: Sequence[bool], *, json: bool)
         print_json({"checks": rows})
         return
     print_table(
-        f"Checks of foot {checks[0].score.foot_id} (± expanded uncertainty, k = 2)",
-        ("session", "", "zero N", "span %", "loop N", "noise N", "E_n"),
+        f"Checks of foot {checks[0].score.foot_id}, {checks[0].state} (± expanded uncertainty, k = 2)",
+        ("session", "", "zero N", "±", "span %", "±", "loop N", "noise N", "E_n"),
         [
             (
-                *(check.session_name, check.state if fresh else "known"),
-                f"{check.score.zero_N:+.2f} ± {2 * check.score.zero_u_N:.2f}",
-                f"{check.score.span_pct:+.2f} ± {2 * check.score.span_u_pct:.2f}",
+                *(check.session_name, "new" if fresh else "known"),
+                *(f"{check.score.zero_N:+.2f}", f"{2 * check.score.zero_u_N:.2f}"),
+                *(f"{check.score.span_pct:+.2f}", f"{2 * check.score.span_u_pct:.2f}"),
                 *(f"{check.score.loop_N:.2f}", f"{check.score.noise_N:.3f}"),
                 f"{max((load.en for load in check.score.loads), key=abs):+.2f}",
             )
@@ -111,11 +111,11 @@ def _print_verdicts(verdicts: Sequence[FootVerdict]) -> None:
 
     print_table(
         "Drift, the worst foot first",
-        ("foot", "verdict", "zero N", "span %", "out", "due", "last check"),
+        ("foot", "verdict", "zero N", "span %", "out", "last check"),
         [
             (
                 *(verdict.foot_id, verdict.text, f"{verdict.zero_N:+.2f}", f"{verdict.span_pct:+.2f}"),
-                *(f"{100 * verdict.p_out:.0f} %", f"{verdict.due or '-'}", verdict.last_check.isoformat()),
+                *(f"{100 * verdict.p_out:.0f} %", verdict.last_check.isoformat()),
             )
             for verdict in verdicts
         ],

@@ -88,7 +88,7 @@ class History:
             rows = self._connection.execute(
                 "SELECT c.id, k.foot_id, k.kind, k.capacity_N, c.calibration_sha256, c.session_name, c.state, c.t_utc, "
                 "c.zero_N, c.zero_u_N, c.span_pct, c.span_u_pct, c.zero_span_cov_N_pct, c.loop_N, c.noise_N, c.temp_C, "
-                "c.limit_span_pct, c.limit_zero_N, (SELECT max(abs(en)) FROM check_loads WHERE check_id = c.id) "
+                "c.limit_span_pct, c.limit_zero_N "
                 "FROM checks c JOIN calibrations k ON k.sha256 = c.calibration_sha256 "
                 "ORDER BY k.foot_id, c.t_utc, c.id"
             ).fetchall()
@@ -175,6 +175,12 @@ class History:
                 ) from error
             raise SettingError(
                 where=self._where, what=f"the history can't be used ({error})", mend="Check path, permissions and room."
+            ) from error
+        except sqlite3.IntegrityError as error:
+            raise SessionError(
+                where=self._where,
+                what=f"the history refuses the check ({error})",
+                mend="Look at the session: a figure of it is missing or out of range.",
             ) from error
         except sqlite3.DatabaseError as error:
             raise FileFormatError(

@@ -76,4 +76,3 @@ class StoredCheck:
     temp_C: float
     limit_span_pct: float
     limit_zero_N: float
-    worst_en: float  # of its loads, by size

@@ -12,9 +12,9 @@ from typing import Any, Final
 import numpy as np
 
 from footcal.drift.charts import ewma, run_start
-from footcal.drift.limits import drift_limits
+from footcal.drift.points import trend_points
 from footcal.drift.records import StoredCheck
-from footcal.drift.trend import Due, Trend, TrendPoint, due, follow, slope_in_sds
+from footcal.drift.trend import Due, Trend, due, follow, slope_in_sds
 from footcal.records import FloatArray
 
 FIT, RE_ZERO, BY, NOW, REPLACE = "fit for use", "re-zero", "recalibrate by", "recalibrate now", "replace"
@@ -92,7 +92,7 @@ def foot_verdict(checks: Sequence[StoredCheck]) -> FootVerdict:
     """
     recent = since_adjustment(checks)
     last = recent[-1]
-    trend = follow(_points(recent), (last.limit_zero_N, last.limit_span_pct))
+    trend = follow(trend_points(recent), (last.limit_zero_N, last.limit_span_pct))
     p_zero, p_span = (float(p[0]) for p in trend.p_out(np.zeros(1)))
     when = due(trend)
     verdict, reason, moved = _decide(checks, trend, when, p_zero, p_span)
@@ -123,24 +123,6 @@ def since_adjustment(checks: Sequence[StoredCheck]) -> list[StoredCheck]:
         if check.state == "as-left" or check.calibration_sha256 != checks[max(index - 1, 0)].calibration_sha256:
             start = index
     return list(checks[start:])
-
-
-def _points(checks: Sequence[StoredCheck]) -> list[TrendPoint]:
-    points = []
-    for check in checks:
-        day = drift_limits(check.kind, check.capacity_N)
-        points.append(
-            TrendPoint(
-                t_days=check.t_utc.timestamp() / 86_400.0,
-                value=(check.zero_N, check.span_pct),
-                covariance=(
-                    check.zero_u_N**2 + day.day_zero_N**2,
-                    check.zero_span_cov_N_pct,
-                    check.span_u_pct**2 + day.day_span_pct**2,
-                ),
-            )
-        )
-    return points
 
 
 _Decision = tuple[str, str, str]  # verdict, reason, and what it rests on: zero, span, loop, noise
@@ -213,7 +195,7 @@ def _by_days(when: Due) -> float:
 
 def _since(checks: Sequence[StoredCheck], moved: str) -> dt.date:
     """Return the first check of the run, up to the last, in which the EWMA chart of the quantity signals."""
-    points = _points(checks)
+    points = trend_points(checks)
     values: FloatArray = {
         "zero": np.array([point.value[0] / math.sqrt(point.covariance[0]) for point in points]),
         "span": np.array([point.value[1] / math.sqrt(point.covariance[2]) for point in points]),

@@ -43,7 +43,7 @@ def _parquet_table(path: Path) -> BlockTable:
         schema = opened.schema_arrow
 
     def blocks(wanted: Mapping[str, str], rows: int) -> Iterator[pa.Table]:
-        with pq.ParquetFile(path) as opened:
+        with pq.ParquetFile(path, pre_buffer=False) as opened:  # reading ahead would hold whole row groups
             for batch in opened.iter_batches(batch_size=rows, columns=list(wanted)):
                 yield pa.Table.from_batches([batch])
 

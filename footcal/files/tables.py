@@ -7,7 +7,7 @@ import os
 import re
 from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from pathlib import Path
-from typing import IO, cast
+from typing import IO, Final, cast
 
 import numpy as np
 import pandas as pd
@@ -32,6 +32,7 @@ from footcal.files.places import (
 from footcal.records import FloatArray
 
 SUFFIXES = (".csv", ".csv.gz", ".parquet")
+_GROUP_ROWS: Final = 120_000  # two minutes at 1 kHz: what a reader in chunks has to hold at least
 _COMMENT_LINES = re.compile(rb"(?m)^#[^\n]*(?:\n|\Z)")
 
 
@@ -110,7 +111,7 @@ def write_table(frame: pd.DataFrame, path: str | os.PathLike[str], metadata: Map
     table = pa.Table.from_pandas(frame, preserve_index=False).replace_schema_metadata(dict(metadata or {}))
     with replacing(path) as temporary:
         if not is_csv(path):
-            pq.write_table(table, temporary, compression="zstd")
+            pq.write_table(table, temporary, compression="zstd", row_group_size=_GROUP_ROWS)
         elif path.name.lower().endswith(".gz"):
             # no time stamp inside, so that equal tables make equal files
             with temporary.open("wb") as raw, gzip.GzipFile("", "wb", 6, raw, mtime=0) as packed:

@@ -133,5 +133,4 @@ def stored(
         temp_C=21.0,
         limit_span_pct=1.0,
         limit_zero_N=2.5,
-        worst_en=0.1,
     )

@@ -116,7 +116,7 @@ def test_a_figure_that_is_no_number_is_refused(tmp_path: Path) -> None:
     check = new_check(1)
     bad = replace(check, score=replace(check.score, zero_N=math.nan))
     with History(tmp_path / "h.sqlite") as store:
-        with pytest.raises(FileFormatError):
+        with pytest.raises(SessionError, match="zero_N"):
             store.add([bad])
         assert store.checks() == []
 
