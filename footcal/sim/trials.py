@@ -15,6 +15,7 @@ from footcal.sim.script import BENCH_C, Script, temperature_C
 from footcal.sim.sensor_chain import SimulatedSensor
 
 CHANNEL_Hz: Final = 1000.0  # the robot's own channel of the same sensor
+SOAK_s: Final = 1800.0
 REST_s: Final = 5.0  # unloaded start of each trial, long enough for a tare
 
 
@@ -31,23 +32,24 @@ class SimulatedTrial:
 
 
 def static_trial(sensor: SimulatedSensor, rng: np.random.Generator, *, holds: int = 24) -> SimulatedTrial:
-    """Return holds of 6 s of any load in any order, the temperature anywhere from 14 to 30 °C and moving.
+    """Return holds of 6 s of any load in any order, in three sets, each at its own temperature from 14 to 30 °C.
 
-    The day's shift is the caller's: give `sensor.day(rng)`.
+    Between the sets there are no readings for half an hour. The day's shift is the caller's: give `sensor.day(rng)`.
     """
     box = draw_box(rng)
-    script = Script(rng=rng, placement_share=sensor.placement_share, now_s=REST_s)
+    levels_C = [float(level_C) for level_C in rng.uniform(14.0, 30.0, 3)]
+    script = Script(rng=rng, placement_share=sensor.placement_share, now_s=REST_s, temperatures=[(0.0, levels_C[0])])
     for k in range(holds):
-        if k % 8 == 7:
-            script.zero(cycle=1)
-            continue
+        if k > 0 and k % (holds // 3) == 0 and len(script.temperatures) < 3:
+            script.zero(cycle=len(script.temperatures))
+            script.soak(SOAK_s, levels_C[len(script.temperatures)], str(len(script.temperatures) + 1))
         load = box.load(rng.uniform(0.04, 0.95) * sensor.capacity_N / box.gravity_m_per_s2)
-        script.put(load, cycle=1, direction="up" if load.mass_kg > script.mass_kg else "down")
-    script.zero(cycle=1)
+        direction = "up" if load.mass_kg > script.mass_kg else "down"
+        script.put(load, cycle=len(script.temperatures), direction=direction)
+    script.zero(cycle=3)
     history = script.history(0.0)
     t_s = script.reading_times(sensor.rate_Hz)
-    start_C, end_C = rng.uniform(14.0, 30.0, 2)
-    body_C = np.linspace(start_C, end_C, t_s.size) + 0.3 * wander(t_s, np.array([60.0, 300.0]), rng)
+    body_C = temperature_C(t_s, script.temperatures, rng)
     raw = read(sensor, t_s, history, body_C, rng)
     hold = np.zeros(t_s.size)
     for number, (begin, end) in enumerate(zip(script.steps["t_start_s"], script.steps["t_end_s"], strict=True), 1):

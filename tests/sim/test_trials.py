@@ -17,16 +17,27 @@ def sensor() -> SimulatedSensor:
 
 
 def test_static_loads_come_in_another_order_and_other_warmth(sensor: SimulatedSensor) -> None:
-    """Loads up to 0.95 of full scale, up and down by chance, each steady in its window, from 14 to 30 °C."""
+    """24 loads up to 0.95 of full scale and 3 zeros, up and down by chance, each steady, at three temperatures."""
     trial = static_trial(sensor.day(np.random.default_rng(8)), np.random.default_rng(9))
     numbers = np.unique(trial.hold[trial.scored > 0.0])
     forces = np.array([trial.force_N[trial.hold == number].mean() for number in numbers])
     spread = [np.ptp(trial.force_N[trial.hold == number]) for number in numbers]
-    assert numbers.size == 25
+    assert numbers.size == 27
     assert max(spread) < 0.1
+    assert np.count_nonzero(forces < 0.1) == 3
     assert 0.5 * sensor.capacity_N < forces.max() < 0.96 * sensor.capacity_N
     assert np.sign(np.diff(forces)).std() > 0.5  # turns up and down
-    assert 12.0 < trial.temp_C.min() <= trial.temp_C.max() < 32.0
+    assert 13.0 < trial.temp_C.min() <= trial.temp_C.max() < 31.0
+
+
+def test_the_bench_is_settled_in_warmth_between_static_sets(sensor: SimulatedSensor) -> None:
+    """Within each set the temperature stays within 2 °C; a new one comes only after a gap of half an hour."""
+    trial = static_trial(sensor, np.random.default_rng(9))
+    edges = np.flatnonzero(np.diff(trial.t_s) > 60.0)
+    sets = np.split(trial.temp_C, edges + 1)
+    assert len(sets) == 3
+    assert max(float(np.ptp(part)) for part in sets) < 2.0
+    assert np.diff(trial.t_s)[edges].min() > 1700.0
 
 
 def test_walking_has_impacts_and_peaks_of_all_heights(sensor: SimulatedSensor) -> None:
