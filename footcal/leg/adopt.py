@@ -4,12 +4,11 @@ from __future__ import annotations
 
 from typing import Any
 
-from numba import njit
-
+from footcal.leg.compiled import inner
 from footcal.leg.fields import DRIVE_ROWS, LINK_ROWS, SENSOR
 
 
-@njit(error_model="numpy")
+@inner
 def adopt(s: Any, c: Any) -> None:
     """Take over every field of `leg_constant_fields`, and the sensitive direction of each sensor.
 

@@ -7,12 +7,11 @@ from __future__ import annotations
 
 from typing import Any
 
-from numba import njit
-
+from footcal.leg.compiled import inner
 from footcal.leg.fields import AXIS, BALL, P0, R0
 
 
-@njit(error_model="numpy")
+@inner
 def first_joint(s: Any) -> None:
     """Place joint 0 straight from the description."""
     for k in range(s.leg_q.shape[1]):
@@ -29,7 +28,7 @@ def first_joint(s: Any) -> None:
             )
 
 
-@njit(error_model="numpy")
+@inner
 def next_joint(s: Any, j: int) -> None:
     """Place joint j from the link before it."""
     if j < 1 or j > 5:  # never; it tells the compiler that j - 1 needs no counting from the end
@@ -56,7 +55,7 @@ def next_joint(s: Any, j: int) -> None:
             )
 
 
-@njit(error_model="numpy")
+@inner
 def turn_row(s: Any, j: int, i: int, k: int, a: float, b: float, d: float) -> None:
     """Row i of (frame at angle zero) times the turn about the joint's axis, after Rodrigues: row R = cos row + sin row x u + (1-cos)(row.u) u."""
     ux, uy, uz = s.leg_link[AXIS, j, k], s.leg_link[AXIS + 1, j, k], s.leg_link[AXIS + 2, j, k]
@@ -69,7 +68,7 @@ def turn_row(s: Any, j: int, i: int, k: int, a: float, b: float, d: float) -> No
     s.leg_z[i, j, k] = along
 
 
-@njit(error_model="numpy")
+@inner
 def foot_and_axis(s: Any) -> None:
     """Ball centre, and sensor axis with the side sensitivity of the calibration, from the last link."""
     j = s.leg_q.shape[0] - 1
@@ -84,7 +83,7 @@ def foot_and_axis(s: Any) -> None:
             s.foot_B_m[i, k] = s.leg_p[i, j, k] + a * px + b * py + d * pz
 
 
-@njit(error_model="numpy")
+@inner
 def jacobian(s: Any) -> None:
     """Columns z_j x (foot - p_j), m/rad."""
     for k in range(s.leg_q.shape[1]):

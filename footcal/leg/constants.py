@@ -8,6 +8,7 @@ from typing import Any
 
 import numpy as np
 
+from footcal.leg.description import Robot
 from footcal.leg.drive import leg_drives
 from footcal.leg.drivefile import DriveFile
 from footcal.leg.fields import (
@@ -52,7 +53,6 @@ from footcal.leg.fields import (
     leg_constant_fields,
     leg_state_fields,
 )
-from footcal.leg.description import Robot
 from footcal.leg.rotation import from_rpy
 from footcal.leg.schema import Foot, Joint, Leg
 from footcal.leg.transmission import ratio_nodes

@@ -8,10 +8,11 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
+
+from footcal.leg.compiled import inner
 
 
-@njit(error_model="numpy")
+@inner
 def couple_motion(s: Any) -> None:
     """q = M^-1 phi, and so for speeds and accelerations."""
     for k in range(s.leg_q.shape[1]):
@@ -25,7 +26,7 @@ def couple_motion(s: Any) -> None:
             s.leg_q[j, k], s.leg_dq[j, k], s.leg_ddq[j, k] = q, dq, ddq
 
 
-@njit(error_model="numpy")
+@inner
 def couple_load(s: Any) -> None:
     """The load as the actuators feel it: M^-T tau_L."""
     for k in range(s.leg_q.shape[1]):
@@ -38,7 +39,7 @@ def couple_load(s: Any) -> None:
             s.leg_load[j, k] = load
 
 
-@njit(error_model="numpy")
+@inner
 def couple_torques(s: Any) -> None:
     """Joint torques M.T tau; variances by the squares; new where any current it rests on is new and none is missing."""
     for k in range(s.leg_q.shape[1]):

@@ -10,8 +10,8 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
 
+from footcal.leg.compiled import inner
 from footcal.leg.fields import (
     COULOMB,
     CURRENT_0,
@@ -37,7 +37,7 @@ from footcal.leg.fields import (
 from footcal.leg.motion import STILL_AFTER_S
 
 
-@njit(error_model="numpy")
+@inner
 def read_currents(inp: Any, s: Any) -> None:
     """Take new currents and motor temperatures, count the age of the others; age of the oldest reading of each leg."""
     for k in range(s.leg_q.shape[1]):
@@ -59,7 +59,7 @@ def read_currents(inp: Any, s: Any) -> None:
         s.motor_age_s[k] = max(oldest, s.leg_worst_s[0, k])
 
 
-@njit(error_model="numpy")
+@inner
 def varying_ratio(s: Any) -> None:
     """Ratio and its slope at the actuator angle: cubic Hermite between nodes, end values beyond them."""
     nodes = s.leg_nodes.shape[1]
@@ -78,7 +78,7 @@ def varying_ratio(s: Any) -> None:
             s.leg_dratio[j, k] = (d0 + u * (2.0 * c2 + 3.0 * u * c3)) / s.leg_drive[NODE_STEP, j, k] if inside else 0.0
 
 
-@njit(error_model="numpy")
+@inner
 def load_torque(s: Any) -> None:
     """tau_L = D - J.T F with the force of the last tick."""
     for k in range(s.leg_q.shape[1]):
@@ -88,7 +88,7 @@ def load_torque(s: Any) -> None:
             s.leg_load[j, k] = s.tau_rigid_Nm[j, k] - pushed
 
 
-@njit(error_model="numpy")
+@inner
 def drive_torques(s: Any, j: int) -> None:
     """Write all that the filter is told of drive j; for coupled drives these are actuator torques, see `coupling`."""
     stuck_share, moving_share, fric_tau_s = s.leg_set[STUCK_SD], s.leg_set[MOVING_SD], s.leg_set[FRIC_TAU_S]

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-
 from dataclasses import dataclass
 
 from footcal.leg.drivefile import DriveFile, DriveJoint

@@ -8,12 +8,11 @@ from __future__ import annotations
 
 from typing import Any
 
-from numba import njit
-
+from footcal.leg.compiled import inner
 from footcal.leg.fields import COM, DISTAL, DISTAL_KG, INERTIA, MASS
 
 
-@njit(error_model="numpy")
+@inner
 def first_link(s: Any) -> None:
     """Motion of link 0 from that of the body."""
     wx, wy, wz = s.leg_w[0], s.leg_w[1], s.leg_w[2]
@@ -26,7 +25,7 @@ def first_link(s: Any) -> None:
         s.leg_la[2, 0, k] += fz
 
 
-@njit(error_model="numpy")
+@inner
 def next_link(s: Any, j: int) -> None:
     """Motion of link j from that of the link before."""
     if j < 1 or j > 5:  # never; see chain.next_joint
@@ -52,7 +51,7 @@ def next_link(s: Any, j: int) -> None:
         s.leg_la[2, j, k] += s.leg_la[2, i, k]
 
 
-@njit(error_model="numpy")
+@inner
 def carry(
     s: Any,
     j: int,
@@ -82,7 +81,7 @@ def carry(
     s.leg_aa[2, j, k] = uz + zz * ddq + (wx * zy - wy * zx) * dq
 
 
-@njit(error_model="numpy")
+@inner
 def link_wrench(s: Any, j: int) -> None:
     """Force m a_c and moment about the joint origin that move link j: I u + w x (I w) + r x m a_c."""
     for k in range(s.leg_q.shape[1]):
@@ -114,7 +113,7 @@ def link_wrench(s: Any, j: int) -> None:
         s.leg_N[2, j, k] = R6 * nx + R7 * ny + R8 * nz + rx * fy - ry * fx
 
 
-@njit(error_model="numpy")
+@inner
 def hand_back(s: Any, j: int) -> None:
     """Add to link j what link j + 1 asks of it, before the torques are read off."""
     if j < 0 or j > 4:  # never; see chain.next_joint
@@ -133,7 +132,7 @@ def hand_back(s: Any, j: int) -> None:
         s.leg_N[2, j, k] += s.leg_N[2, i, k] + rx * fy - ry * fx
 
 
-@njit(error_model="numpy")
+@inner
 def below_sensor(s: Any) -> None:
     """h.m_d(g - a_c): what the mass below the sensor takes from the ground's push before the sensor feels it."""
     j = s.leg_q.shape[0] - 1
@@ -153,7 +152,7 @@ def below_sensor(s: Any) -> None:
         )
 
 
-@njit(error_model="numpy")
+@inner
 def rigid_torques(s: Any) -> None:
     """The part of each moment that its joint's motor carries: z_j . N_j."""
     for k in range(s.leg_q.shape[1]):

@@ -10,8 +10,8 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
 
+from footcal.leg.compiled import inner
 from footcal.leg.fields import STRIBECK, UNSTICK
 
 TWO_OVER_PI = 0.6366197723675814
@@ -19,7 +19,7 @@ HALF_PI_HIGH = 1.57079632673412561417e0  # first 33 bits of pi/2
 HALF_PI_LOW = 6.07710050650619224932e-11
 
 
-@njit(error_model="numpy")
+@inner
 def curves(s: Any, j: int) -> None:
     """Sine and cosine of joint angle j; tanh(speed/stuck speed) without its sign; Stribeck's bump exp(-(speed/v_st)^2)."""
     unstick = s.leg_set[UNSTICK]  # read before the loop: a row that does not move with j would stop the vector
@@ -38,7 +38,7 @@ def curves(s: Any, j: int) -> None:
         s.leg_bump[j, k] = falling(x * x)
 
 
-@njit(error_model="numpy")
+@inner
 def sine_of_rest(r: float) -> float:
     """Sine for |r| <= pi/4."""
     x = r * r
@@ -47,7 +47,7 @@ def sine_of_rest(r: float) -> float:
     return r - r * x * (1.0 / 6.0 - x * odd)
 
 
-@njit(error_model="numpy")
+@inner
 def cosine_of_rest(r: float) -> float:
     """Cosine for |r| <= pi/4."""
     x = r * r
@@ -56,7 +56,7 @@ def cosine_of_rest(r: float) -> float:
     return 1.0 - x * (0.5 - x * even)
 
 
-@njit(error_model="numpy")
+@inner
 def falling(y: float) -> float:
     """exp(-y) for y >= 0; beyond 60 it stays at exp(-60)."""
     t = min(y, 60.0) * (1.0 / 128.0)

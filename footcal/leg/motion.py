@@ -10,14 +10,14 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
 
+from footcal.leg.compiled import inner
 from footcal.leg.fields import DQ_TAU_S, ENC_OFF, ENC_SIGN, HERE, LEAD, W_TAU_S
 
 STILL_AFTER_S = 0.05  # a joint not heard for longer is taken to stand still
 
 
-@njit(error_model="numpy")
+@inner
 def read_joints(inp: Any, s: Any) -> None:
     """Take new encoder readings: actuator angle and speed; count the age of the others.
 
@@ -55,7 +55,7 @@ def read_joints(inp: Any, s: Any) -> None:
             s.leg_worst_s[j, k] = worst
 
 
-@njit(error_model="numpy")
+@inner
 def slope_joints(s: Any, j: int) -> None:
     """Advance the derivative filter of joint j wherever it was read; joint angles are the actuators' (see `coupling`)."""
     tau, lead = s.leg_set[DQ_TAU_S], s.leg_set[LEAD]
@@ -82,7 +82,7 @@ def slope_joints(s: Any, j: int) -> None:
         s.leg_ddq[j, k] = ddphi
 
 
-@njit(error_model="numpy")
+@inner
 def read_base(inp: Any, gravity: Any, s: Any) -> None:
     """Take the inertial unit: angular rate, angular acceleration, and specific force moved to the body origin.
 
@@ -116,7 +116,7 @@ def read_base(inp: Any, gravity: Any, s: Any) -> None:
         _move_to_origin(s)
 
 
-@njit(error_model="numpy")
+@inner
 def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any) -> None:
     tau = s.leg_set[W_TAU_S]
     a = np.exp(-gap / tau)
@@ -141,7 +141,7 @@ def _slope_base(gap: float, gx: float, gy: float, gz: float, s: Any) -> None:
     s.leg_gyro_on[0] = 1
 
 
-@njit(error_model="numpy")
+@inner
 def _move_to_origin(s: Any) -> None:
     rx, ry, rz = s.leg_imu[9], s.leg_imu[10], s.leg_imu[11]
     wx, wy, wz = s.leg_w[0], s.leg_w[1], s.leg_w[2]
@@ -152,7 +152,7 @@ def _move_to_origin(s: Any) -> None:
     s.leg_f[2] = s.leg_accel_I[2] - (ux * ry - uy * rx) - (wx * vy - wy * vx)
 
 
-@njit(error_model="numpy")
+@inner
 def _force_at_rest(gravity: Any, s: Any) -> None:
     w, x, y, z = s.leg_quat[0], s.leg_quat[1], s.leg_quat[2], s.leg_quat[3]
     norm = w * w + x * x + y * y + z * z

@@ -8,10 +8,9 @@ from __future__ import annotations
 
 from typing import Any
 
-from numba import njit
-
 from footcal.leg.adopt import adopt
 from footcal.leg.chain import first_joint, foot_and_axis, jacobian, next_joint
+from footcal.leg.compiled import inner
 from footcal.leg.coupling import couple_load, couple_motion, couple_torques
 from footcal.leg.current import drive_torques, load_torque, read_currents, varying_ratio
 from footcal.leg.dynamics import below_sensor, first_link, hand_back, link_wrench, next_link, rigid_torques
@@ -20,7 +19,7 @@ from footcal.leg.fields import COUPLED, VARIES
 from footcal.leg.motion import read_base, read_joints, slope_joints
 
 
-@njit(error_model="numpy")
+@inner
 def leg_step(inp: Any, gravity: Any, s: Any, c: Any) -> None:
     """Advance every leg by one tick: geometry, rigid-body torques, and what the motors say.
 
@@ -53,7 +52,7 @@ def leg_step(inp: Any, gravity: Any, s: Any, c: Any) -> None:
         couple_torques(s)
 
 
-@njit(error_model="numpy")
+@inner
 def posture(s: Any) -> None:
     """From actuator angles, speeds and accelerations to geometry, rigid-body torques and inertia below the sensor."""
     joints = s.leg_q.shape[0]
