@@ -12,7 +12,7 @@ from pydantic import Field, ValidationError, model_validator
 from footcal.errors import FileFormatError
 from footcal.leg.description import Robot
 from footcal.leg.problems import Table, as_file_error, refuse
-from footcal.leg.schema import Name, NotNegative, Positive
+from footcal.leg.schema import Name, NotNegative, Number, Positive
 
 FORMAT = "footcal-drive"
 VERSION = 1
@@ -42,15 +42,17 @@ class DriveJoint(Table):
     stribeck_rad_per_s: Positive
     viscous_Nms_per_rad: NotNegative
     load_share: NotNegative
-    current_offset_A: float
+    current_offset_A: Number
     current_noise_A: NotNegative = 0.2  # standard deviation of one current reading
     delay_s: NotNegative
     lag_s: NotNegative
     u: DriveUncertainty
-    observable_share: Annotated[float, Field(ge=0.0, le=1.0)]  # of a load change at rest that the current shows
+    observable_share: Annotated[
+        float, Field(ge=0.0, le=1.0, strict=True)
+    ]  # of a load change at rest that the current shows
     not_identified: tuple[str, ...] = ()  # keys above that are starting values because the data did not separate them
     covariance_keys: tuple[str, ...] = ()  # rows and columns of the covariance
-    covariance: tuple[tuple[float, ...], ...] = ()
+    covariance: tuple[tuple[Number, ...], ...] = ()
 
     @model_validator(mode="after")
     def _sound(self) -> DriveJoint:
@@ -74,7 +76,7 @@ class DriveFile(Table):
     leg: Name
     made_utc: str
     tool_version: str
-    temp_C: float | None = None  # motor temperature the torque constants hold for; None where none was logged
+    temp_C: Number | None = None  # motor temperature the torque constants hold for; None where none was logged
     data_sha256: tuple[str, ...] = ()  # of the logs it was identified from
     joints: Annotated[tuple[DriveJoint, ...], Field(min_length=1)]
 

@@ -16,9 +16,10 @@ from pydantic import Field, field_validator, model_validator
 
 from footcal.leg.problems import Table, refuse
 
-Vec3 = tuple[float, float, float]
-Positive = Annotated[float, Field(gt=0.0)]
-NotNegative = Annotated[float, Field(ge=0.0)]
+Number = Annotated[float, Field(strict=True)]  # a number in quotes is refused
+Vec3 = tuple[Number, Number, Number]
+Positive = Annotated[float, Field(gt=0.0, strict=True)]
+NotNegative = Annotated[float, Field(ge=0.0, strict=True)]
 Name = Annotated[str, Field(pattern=r"^[A-Za-z][A-Za-z0-9_]*$")]
 MAX_JOINTS = 6
 
@@ -45,7 +46,7 @@ class ScrewTransmission(Table):
     lead_m: Positive  # travel of the nut for one turn of the screw
     anchor_base_m: Vec3  # on the part before the joint, in the joint frame at angle zero
     anchor_link_m: Vec3  # on the link after the joint, in the joint frame
-    range_rad: tuple[float, float]  # joint angles the leg can reach
+    range_rad: tuple[Number, Number]  # joint angles the leg can reach
     ratio: Positive = 1.0  # of a belt or gear between motor and screw: motor turns per screw turn
 
     @model_validator(mode="after")
@@ -58,7 +59,7 @@ class TableTransmission(Table):
     """A linkage given as a table: joint angle against ratio."""
 
     kind: Literal["table"]
-    q_rad: Annotated[tuple[float, ...], Field(min_length=2)]
+    q_rad: Annotated[tuple[Number, ...], Field(min_length=2)]
     ratio: Annotated[tuple[Positive, ...], Field(min_length=2)]
 
     @model_validator(mode="after")
@@ -95,13 +96,13 @@ class Joint(Table):
     xyz_m: Vec3
     rpy_rad: Vec3 = (0.0, 0.0, 0.0)
     encoder_sign: Literal[1, -1] = 1
-    encoder_offset_rad: float = 0.0
+    encoder_offset_rad: Number = 0.0
     mass_kg: NotNegative = 0.0
     com_m: Vec3 = (0.0, 0.0, 0.0)
-    inertia_kg_m2: tuple[float, float, float, float, float, float] = (0.0, 0.0, 0.0, 0.0, 0.0, 0.0)
+    inertia_kg_m2: tuple[Number, Number, Number, Number, Number, Number] = (0.0, 0.0, 0.0, 0.0, 0.0, 0.0)
     kt_Nm_per_A: Positive | None = None
     kv_rpm_per_V: Positive | None = None
-    kt_temp_coeff_per_K: float = 0.0
+    kt_temp_coeff_per_K: Number = 0.0
     rotor_inertia_kg_m2: NotNegative = 0.0
     current_delay_s: NotNegative = 0.0
     current_lag_s: NotNegative = 0.0
@@ -158,7 +159,7 @@ class Leg(Table):
     name: Name
     calibration: str | None = None  # path of the foot's calibration file, as written in the description
     drive: str | None = None
-    actuator_matrix: tuple[tuple[float, ...], ...] | None = None
+    actuator_matrix: tuple[tuple[Number, ...], ...] | None = None
     joints: Annotated[tuple[Joint, ...], Field(alias="joint", min_length=1, max_length=MAX_JOINTS)]
     foot: Foot
 
@@ -207,8 +208,8 @@ class Column(Table):
     """Where one quantity of a log stands, and how to bring it to the unit of its name: value * scale + offset."""
 
     name: str
-    scale: float = 1.0
-    offset: float = 0.0
+    scale: Number = 1.0
+    offset: Number = 0.0
 
 
 class RobotFile(Table):
@@ -217,7 +218,7 @@ class RobotFile(Table):
     robot_id: str
     mass_kg: Positive  # with legs
     mass_u_kg: NotNegative = 0.0
-    gravity_m_per_s2: Annotated[float, Field(gt=9.0, lt=10.0)] = 9.80665
+    gravity_m_per_s2: Annotated[float, Field(gt=9.0, lt=10.0, strict=True)] = 9.80665
     imu: Imu = Imu()
     legs: Annotated[tuple[Leg, ...], Field(alias="leg", min_length=1)]
     columns: Mapping[str, Column] = {}
