@@ -57,7 +57,7 @@ def next_joint(s: Any, j: int) -> None:
 
 @inner
 def turn_row(s: Any, j: int, i: int, k: int, a: float, b: float, d: float) -> None:
-    """Row i of (frame at angle zero) times the turn about the joint's axis, after Rodrigues: row R = cos row + sin row x u + (1-cos)(row.u) u."""
+    """Turn row i of the frame at angle zero about the joint's axis u: cos row + sin row x u + (1 - cos)(row.u) u."""
     ux, uy, uz = s.leg_link[AXIS, j, k], s.leg_link[AXIS + 1, j, k], s.leg_link[AXIS + 2, j, k]
     sin, cos = s.leg_sin[j, k], s.leg_cos[j, k]
     along = a * ux + b * uy + d * uz

@@ -1,4 +1,4 @@
-"""The decorator of everything that runs inside the step: no Python entry of its own, which halves what is compiled."""
+"""The decorator of all that runs inside the step: no Python entry of its own, so that less is compiled."""
 
 from __future__ import annotations
 
@@ -8,6 +8,7 @@ from typing import Any, TypeVar
 from numba import njit
 
 Function = TypeVar("Function", bound=Callable[..., Any])
+_OPTIONS: dict[str, Any] = {"error_model": "numpy", "no_cpython_wrapper": True, "no_cfunc_wrapper": True}
 
 
 def inner(function: Function) -> Function:
@@ -19,5 +20,5 @@ def inner(function: Function) -> Function:
     Returns:
         The compiled function; callable from Python only with the compiler switched off (NUMBA_DISABLE_JIT=1).
     """
-    compiled: Function = njit(error_model="numpy", no_cpython_wrapper=True, no_cfunc_wrapper=True)(function)
+    compiled: Function = njit(**_OPTIONS)(function)
     return compiled

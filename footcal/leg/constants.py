@@ -139,8 +139,8 @@ def _fill_foot(foot: Foot, c: Any, lane: int) -> None:
 def sensor_frame(foot: Foot) -> FloatArray:
     """Return the sensor's x, y and axis as rows, seen in the last link.
 
-    The axis is z; x is the link's x axis laid square to it (the link's y axis where x lies along the sensor), y = z cross x.
-    The two numbers of a calibration's `cross_axis` belong to x and y.
+    The axis is z; x is the link's x axis laid square to it (the link's y axis where x lies along the sensor), y = z
+    cross x. The two numbers of a calibration's `cross_axis` belong to x and y.
 
     Args:
         foot: the foot of a leg.
@@ -195,7 +195,7 @@ def _fill_ratio(joint: Joint, c: Any, j: int, lane: int) -> None:
         c["leg_set"][..., VARIES] = 1.0
 
 
-def _unit(vector: Sequence[float]) -> FloatArray:
+def _unit(vector: Sequence[float] | FloatArray) -> FloatArray:
     array = np.array(vector, dtype=np.float64)
     return np.asarray(array / np.linalg.norm(array))
 

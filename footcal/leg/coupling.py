@@ -1,6 +1,7 @@
 """Compiled: legs whose actuators turn several joints (a belt along the thigh): angles by M^-1, torques by M.T.
 
-Actuator angles = M @ joint angles. Friction, rotors and currents belong to the actuators; the filter works in joint space.
+Actuator angles = M @ joint angles. Friction, rotors and currents belong to the actuators; the filter works in joint
+space.
 """
 
 from __future__ import annotations
@@ -14,7 +15,7 @@ from footcal.leg.compiled import inner
 
 @inner
 def couple_motion(s: Any) -> None:
-    """q = M^-1 phi, and so for speeds and accelerations."""
+    """Q = M^-1 phi, and so for speeds and accelerations."""
     for k in range(s.leg_q.shape[1]):
         for j in range(s.leg_q.shape[0]):
             q, dq, ddq = 0.0, 0.0, 0.0

@@ -1,8 +1,9 @@
 """Compiled: motor current to joint torque, and what friction and rotors take of it; the drive model of every joint.
 
 tau_m = ratio*Kt*(i - i0), no efficiency factor: losses are the load-dependent share of the friction,
-tau_f = tanh(dq/v_s)*[tau_c + (tau_brk - tau_c)*exp(-(dq/v_st)^2) + mu*|tau_L|] + b_v*dq, with tau_L the load of the last tick.
-The friction error is coloured: a stuck joint hides anything up to its limit, a moving one leaves a small share of it.
+tau_f = tanh(dq/v_s)*[tau_c + (tau_brk - tau_c)*exp(-(dq/v_st)^2) + mu*|tau_L|] + b_v*dq, with tau_L the load of the
+last tick. The friction error is coloured: a stuck joint hides anything up to its limit, a moving one leaves a small
+share of it.
 """
 
 from __future__ import annotations

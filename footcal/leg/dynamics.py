@@ -1,7 +1,7 @@
 """Compiled: recursive Newton-Euler for all legs on a moving base, in the body frame, and the inertia below the sensor.
 
-Source: Luh, Walker and Paul 1980 (from memory). "Acceleration" always means acceleration minus gravity, which is what the
-inertial unit reads, so gravity needs no term of its own.
+Source: Luh, Walker and Paul 1980 (from memory). "Acceleration" always means acceleration minus gravity, which is what
+the inertial unit reads, so gravity needs no term of its own.
 """
 
 from __future__ import annotations
@@ -66,7 +66,7 @@ def carry(
     ry: float,
     rz: float,
 ) -> None:
-    """Rate w and acceleration u of the part before, arm r to joint j: rate and acceleration of link j; u x r + w x (w x r)."""
+    """Go from the part before (rate w, acceleration u, arm r) to link j; its origin gains u x r + w x (w x r)."""
     vx, vy, vz = wy * rz - wz * ry, wz * rx - wx * rz, wx * ry - wy * rx
     s.leg_la[0, j, k] = uy * rz - uz * ry + wy * vz - wz * vy
     s.leg_la[1, j, k] = uz * rx - ux * rz + wz * vx - wx * vz

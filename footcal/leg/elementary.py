@@ -1,8 +1,9 @@
 """Compiled: sines, cosines and falling exponentials as plain polynomials, so that the loop over lanes becomes a vector.
 
-The library's own functions do not vectorise and took half of the step (measured). Sine and cosine are Taylor's series
-within an eighth of a turn, right to 1e-15 for angles up to 1000 rad; the exponential is Taylor's series of y/128, squared
-seven times, right to 1e-10 of its value. One loop for all four: a shorter loop is unrolled by the compiler instead.
+The library's own functions do not vectorise and took a quarter of the step (measured). Sine and cosine are Taylor's series
+within an eighth of a turn, right to 1e-15 for angles up to 1000 rad; the exponential is Taylor's series of y/128,
+squared seven times, right to 1e-10 of its value. One loop for all four: a shorter loop is unrolled by the compiler
+instead.
 """
 
 from __future__ import annotations
@@ -21,7 +22,7 @@ HALF_PI_LOW = 6.07710050650619224932e-11
 
 @inner
 def curves(s: Any, j: int) -> None:
-    """Sine and cosine of joint angle j; tanh(speed/stuck speed) without its sign; Stribeck's bump exp(-(speed/v_st)^2)."""
+    """Write sine and cosine of joint angle j, |tanh(speed/stuck speed)|, and Stribeck's bump exp(-(speed/v_st)^2)."""
     unstick = s.leg_set[UNSTICK]  # read before the loop: a row that does not move with j would stop the vector
     for k in range(s.leg_q.shape[1]):
         turns = np.floor(s.leg_q[j, k] * TWO_OVER_PI + 0.5)  # quarter turns

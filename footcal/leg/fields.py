@@ -1,9 +1,11 @@
 """The fields that the leg part adds to the runtime's state and constants records; last axis is the leg lane.
 
-The constants stand in both records: the step copies them once into the state, because rows of one record cannot overlap,
-and only then does the compiler make full-width vectors of four lanes (measured: 402 ns to 68 ns for the link forces).
+The constants stand in both records: the step copies them once into the state, because rows of one record cannot
+overlap, and only then does the compiler make full-width vectors of four lanes (measured: 402 ns to 68 ns for the link
+forces).
 
-All joint rows end in (J, L), so that they have one stride: then code that takes the joint as an argument vectorises too.
+All joint rows end in (J, L), so that they have one stride: then code that takes the joint as an argument vectorises
+too.
 
 J is 3 or 6; joints a leg does not have are padded: zero axis, zero mass, ratio 0. Vectors and matrices are body frame B
 unless the comment says link (the frame of a joint after its rotation).
@@ -69,7 +71,7 @@ UNSTICK, STUCK_SD, MOVING_SD, FRIC_TAU_S, DQ_TAU_S, W_TAU_S, LEAD, VARIES, COUPL
 
 
 def leg_state_fields(legs: int, joints: int) -> list[Field]:
-    """Return name, type and shape of every state field of the leg part: what it hands on, what it remembers, work rows."""
+    """Return name, type and shape of every state field of the leg part: handed on, remembered, work rows."""
     J, L = joints, legs
     handed_on: list[Field] = [
         ("foot_B_m", "f8", (3, L)),  # ball centre
@@ -142,7 +144,7 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
 
 
 def leg_constant_fields(legs: int, joints: int) -> list[Field]:
-    """Return name, type and shape of every constant field of the leg part; the rows are named at the top of this file."""
+    """Return name, type and shape of every constant field of the leg part; rows are named at the top."""
     J, L = joints, legs
     return [
         ("leg_link", "f8", (LINK_ROWS, J, L)),
@@ -176,7 +178,7 @@ def tick_fields(legs: int, joints: int) -> list[Field]:
 
 @lru_cache(maxsize=32)
 def leg_dtypes(legs: int, joints: int) -> tuple[np.dtype[Any], np.dtype[Any], np.dtype[Any]]:
-    """Return the dtypes of tick, state and constants of a leg step that runs by itself, without a sensor or a filter."""
+    """Return the dtypes of tick, state and constants of a leg step that runs by itself."""
     constants = [*leg_constant_fields(legs, joints), ("sen_cross", "f8", (2, legs))]
     return (
         np.dtype(tick_fields(legs, joints)),

@@ -17,8 +17,8 @@ def friction_Nm(
 ) -> FloatArray:
     """Return the torque that friction takes from the motor at a speed, joint side.
 
-    Law: sign(v) * [Fc + (Fs - Fc) exp(-(v/vs)^2) + mu |load|] + b v. Source: Canudas de Wit, Olsson, Astrom, Lischinsky,
-    IEEE Trans. Autom. Control 40 (1995), steady state; the load-dependent part as usual for gears.
+    Law: sign(v) * [Fc + (Fs - Fc) exp(-(v/vs)^2) + mu |load|] + b v. Source: Canudas de Wit, Olsson, Astrom,
+    Lischinsky, IEEE Trans. Autom. Control 40 (1995), steady state; the load-dependent part as usual for gears.
 
     Args:
         drive: Fc, Fs, vs, b and mu of the joint.

@@ -1,8 +1,8 @@
 """Compiled: readings of joints and inertial unit held with their age, and their derivatives without lag.
 
 A derivative is that of a first-order low-pass with first-order hold, d = (v - LP[v])/T, exact for a ramp at any sample
-interval; d + lead*(d - LP[d]) has, at lead 1, no lag to first order. So accelerations, specific force and angles all belong
-to the same instant. Source: elementary filter theory, worked out here.
+interval; d + lead*(d - LP[d]) has, at lead 1, no lag to first order. So accelerations, specific force and angles all
+belong to the same instant. Source: elementary filter theory, worked out here.
 """
 
 from __future__ import annotations
@@ -57,7 +57,7 @@ def read_joints(inp: Any, s: Any) -> None:
 
 @inner
 def slope_joints(s: Any, j: int) -> None:
-    """Advance the derivative filter of joint j wherever it was read; joint angles are the actuators' (see `coupling`)."""
+    """Advance the derivative filter of joint j wherever it was read; uncoupled, see `coupling`."""
     tau, lead = s.leg_set[DQ_TAU_S], s.leg_set[LEAD]
     for k in range(s.leg_q.shape[1]):
         gap = s.leg_gap_s[j, k]
@@ -86,15 +86,15 @@ def slope_joints(s: Any, j: int) -> None:
 def read_base(inp: Any, gravity: Any, s: Any) -> None:
     """Take the inertial unit: angular rate, angular acceleration, and specific force moved to the body origin.
 
-    f at the origin = f at the unit - dw x r - w x (w x r). A unit that gives nothing leaves a body at rest: level, or as
-    its attitude says.
+    f at the origin = f at the unit - dw x r - w x (w x r). A unit that gives nothing leaves a body at rest: level, or
+    as its attitude says.
     """
     dt = s.dt_s[0]
     s.leg_gyro_age_s[0] += dt
     s.leg_accel_age_s[0] += dt
     R = s.leg_imu
     gx, gy, gz = inp.gyro_rad_per_s[0], inp.gyro_rad_per_s[1], inp.gyro_rad_per_s[2]
-    if gx + gy + gz == gx + gy + gz:  # noqa: PLR0124
+    if gx + gy + gz == gx + gy + gz:
         _slope_base(s.leg_gyro_age_s[0], gx, gy, gz, s)
         s.leg_gyro_age_s[0] = 0.0
     elif s.leg_gyro_age_s[0] > STILL_AFTER_S:
@@ -103,11 +103,11 @@ def read_base(inp: Any, gravity: Any, s: Any) -> None:
             s.leg_dw[i] = 0.0
         s.leg_gyro_on[0] = 0
     ax, ay, az = inp.accel_m_per_s2[0], inp.accel_m_per_s2[1], inp.accel_m_per_s2[2]
-    if ax + ay + az == ax + ay + az:  # noqa: PLR0124
+    if ax + ay + az == ax + ay + az:
         for i in range(3):
             s.leg_accel_I[i] = R[3 * i] * ax + R[3 * i + 1] * ay + R[3 * i + 2] * az
         s.leg_accel_age_s[0] = 0.0
-    if inp.quat_WB[0] == inp.quat_WB[0]:  # noqa: PLR0124
+    if inp.quat_WB[0] == inp.quat_WB[0]:
         for i in range(4):
             s.leg_quat[i] = inp.quat_WB[i]
     if s.leg_accel_age_s[0] > STILL_AFTER_S:

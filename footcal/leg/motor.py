@@ -11,8 +11,8 @@ def torque_constant_Nm_per_A(kv_rpm_per_V: float) -> float:
     """Return the torque constant that belongs to a speed constant.
 
     Law: Kt = 60 / (2 pi Kv), an identity of units (power in = power out, no loss). It holds for line-to-line peak
-    quantities of six-step drive; where "ampere" means the rms phase current or a d-q current, a factor such as sqrt(3)/2
-    or sqrt(3/2) comes in, so this is a starting value that the identification settles.
+    quantities of six-step drive; where "ampere" means the rms phase current or a d-q current, a factor such as
+    sqrt(3)/2 or sqrt(3/2) comes in, so this is a starting value that the identification settles.
 
     Args:
         kv_rpm_per_V: no-load speed over voltage, above 0.

@@ -12,8 +12,8 @@ from footcal.records import FloatArray
 def backward_efficiency(efficiency_forward: float) -> float:
     """Return the efficiency of a reduction driven from its load, from that driven by its motor.
 
-    Law: 2 - 1/eta, from one loss for both directions; at eta = 0.5 and below the drive locks itself. Source: machine-design
-    texts (from memory); for a screw of small friction it is close to the exact one, see `screw`.
+    Law: 2 - 1/eta, from one loss for both directions; at eta = 0.5 and below the drive locks itself. Source:
+    machine-design texts (from memory); for a screw of small friction it is close to the exact one, see `screw`.
 
     Args:
         efficiency_forward: above 0, at most 1.
@@ -42,9 +42,10 @@ def load_efficiencies(load_share: float) -> tuple[float, float]:
 def observable_share(drive: JointDrive, load_change_Nm: float, load_Nm: float = 0.0) -> float:
     """Return the share of a load change at rest that the current of a joint must show.
 
-    A joint at rest holds its load anywhere within +-(breakaway + mu |load|), so that of a change d only what exceeds the
-    width of that band is sure to reach the motor: max(0, |d| - 2 limit)/|d|, times the backward efficiency. Worked out here
-    from the friction law of `friction`; a self-locking drive (backward efficiency 0 or below) shows nothing.
+    A joint at rest holds its load anywhere within +-(breakaway + mu |load|), so that of a change d only what exceeds
+    the width of that band is sure to reach the motor: max(0, |d| - 2 limit)/|d|, times the backward efficiency.
+    Worked out here from the friction law of `friction`; a self-locking drive (backward efficiency 0 or below) shows
+    nothing.
 
     Args:
         drive: friction of the joint.

@@ -151,7 +151,9 @@ def foot_position_m(robot: Robot, leg: str, q_rad: FloatArray) -> FloatArray:
 
 
 def foot_jacobian_m_per_rad(robot: Robot, leg: str, q_rad: FloatArray) -> FloatArray:
-    """Return how the foot's ball moves with the joints: d foot / dq in the body frame; joint torque of a force is -J.T F.
+    """Return how the foot's ball moves with the joints: d foot / dq in the body frame.
+
+    A force F of the ground on the foot asks -J.T F of the joints.
 
     Args:
         robot: the description.

@@ -49,7 +49,7 @@ def refuse(kind: str, what: str, mend: str) -> None:
     Raises:
         PydanticCustomError: always.
     """
-    raise PydanticCustomError(kind, "{what}", {"what": what, "mend": mend})  # type: ignore[arg-type]  # a plain word is wanted
+    raise PydanticCustomError(kind, "{what}", {"what": what, "mend": mend})
 
 
 def near_match(word: str, known: Sequence[str]) -> str:

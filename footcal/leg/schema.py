@@ -1,8 +1,8 @@
 """What `robot.toml` may hold: one frozen record a table, every value checked once, here.
 
-Signs. A joint angle is `encoder_sign * (reading - encoder_offset_rad)`, so the offset is what the encoder reads at joint
-angle zero. A current counts positive when it drives the encoder reading upwards. With `actuator_matrix` M the encoders sit
-on the actuators: actuator angles = M @ joint angles, joint torques = M.T @ actuator torques.
+Signs. A joint angle is `encoder_sign * (reading - encoder_offset_rad)`, so the offset is what the encoder reads at
+joint angle zero. A current counts positive when it drives the encoder reading upwards. With `actuator_matrix` M the
+encoders sit on the actuators: actuator angles = M @ joint angles, joint torques = M.T @ actuator torques.
 """
 
 from __future__ import annotations
@@ -167,7 +167,8 @@ class Leg(Table):
     def _sound(self) -> Leg:
         unlike("joint", [joint.name for joint in self.joints])
         if self.foot.distal_mass_kg > self.joints[-1].mass_kg + 1e-12:
-            found = f"foot.distal_mass_kg {self.foot.distal_mass_kg:g} exceeds the last link's mass {self.joints[-1].mass_kg:g} kg"
+            link_kg = self.joints[-1].mass_kg
+            found = f"foot.distal_mass_kg {self.foot.distal_mass_kg:g} exceeds the last link's mass {link_kg:g} kg"
             refuse("distal", found, "mass_kg of the last link includes what hangs below the sensor.")
         for i, joint in enumerate(self.joints):
             if joint.has_motor and joint.friction is None and self.drive is None:

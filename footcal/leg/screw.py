@@ -46,7 +46,7 @@ class Screw:
         return force_N * self.mean_diameter_m / 2.0 * (self.lead_m + f * around_m) / (around_m - f * self.lead_m)
 
     def lower_Nm(self, force_N: float) -> float:
-        """Torque that moves the nut with a force: F d/2 (pi f' d - l) / (pi d + f' l); below 0 the load drives the screw."""
+        """Torque that moves the nut with a force: F d/2 (pi f' d - l) / (pi d + f' l); below 0 the load drives it."""
         around_m = math.pi * self.mean_diameter_m
         f = self._thread_friction
         return force_N * self.mean_diameter_m / 2.0 * (f * around_m - self.lead_m) / (around_m + f * self.lead_m)

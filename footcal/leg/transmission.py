@@ -1,4 +1,4 @@
-"""The ratio between motor and joint: fixed, of a screw with a lever arm, or from a table; as nodes for the compiled step."""
+"""The ratio between motor and joint: fixed, of a screw with a lever arm, or from a table; as nodes for the step."""
 
 from __future__ import annotations
 

@@ -1,7 +1,7 @@
 """An oracle for rigid-body torques that shares nothing with the recursion: Lagrange's equation by finite differences.
 
-Poses come from 4x4 matrices with scipy rotations, velocities from differences of poses. The body's own motion is a pose that
-depends on time, so a moving base needs no extra formula: tau = d/dt (dT/d dq) - d(T - V)/dq.
+Poses come from 4x4 matrices with scipy rotations, velocities from differences of poses. The body's own motion is a
+pose that depends on time, so a moving base needs no extra formula: tau = d/dt (dT/d dq) - d(T - V)/dq.
 """
 
 from __future__ import annotations

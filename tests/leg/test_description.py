@@ -182,19 +182,21 @@ def test_broken_toml_names_the_line(tmp_path: Path) -> None:
 @given(cut=st.integers(0, len(GOOD) - 1))
 def test_cut_description_is_read_or_refused_in_words(tmp_path: Path, cut: int) -> None:
     """However a file is cut, the reader gives a robot or an error of the project's own."""
+    found: str
     try:
-        robot = load(tmp_path, GOOD[:cut])
+        found = load(tmp_path, GOOD[:cut]).robot_id
     except FileFormatError as error:
-        assert error.where
-        assert error.mend
-    else:
-        assert robot.robot_id == "demo"
+        found = error.mend
+
+    assert found
+    assert found == "demo" or found.endswith((".", "?"))
 
 
 def test_screw_with_a_dead_centre_in_its_range_is_refused(tmp_path: Path) -> None:
     """Where the lever arm vanishes the current tells nothing: the joint is named."""
-    screw = '{ kind = "screw", lead_m = 0.004, anchor_base_m = [0.0, 0.0, 0.1], anchor_link_m = [0.0, 0.0, -0.05], range_rad = [-1.0, 1.0] }'
+    anchors = "anchor_base_m = [0.0, 0.0, 0.1], anchor_link_m = [0.0, 0.0, -0.05]"
+    screw = f'{{ kind = "screw", lead_m = 0.004, {anchors}, range_rad = [-1.0, 1.0] }}'
     robot = load(tmp_path, GOOD.replace('{ kind = "ratio", ratio = 7.2 }', screw))
 
-    with pytest.raises(SettingError, match="joint thigh.*dead centre"):
+    with pytest.raises(SettingError, match=r"joint thigh.*dead centre"):
         ratio_nodes(robot.leg("front_left").joints[0])

@@ -34,7 +34,7 @@ def test_polynomials_equal_the_librarys_functions() -> None:
 
 def test_quarter_turn_in_two_parts_is_exact() -> None:
     """The two parts of pi/2 add up to it, and the first has zeros at its end so that whole multiples are exact."""
-    assert HALF_PI_HIGH + HALF_PI_LOW == np.pi / 2
+    assert np.pi / 2 == HALF_PI_HIGH + HALF_PI_LOW
     assert (1000 * HALF_PI_HIGH) / 1000 == HALF_PI_HIGH
 
 

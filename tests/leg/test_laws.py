@@ -49,7 +49,7 @@ SCREWS = [  # mean diameter, lead, friction, half angle, then computed apart: le
 
 @pytest.mark.parametrize(("d_m", "lead_m", "f", "half_deg", "lead_deg", "forward", "back", "locks"), SCREWS)
 def test_screw_has_the_efficiencies_of_the_textbook(
-    d_m: float, lead_m: float, f: float, half_deg: float, lead_deg: float, forward: float, back: float, locks: bool
+    d_m: float, lead_m: float, f: float, half_deg: float, lead_deg: float, forward: float, back: float, *, locks: bool
 ) -> None:
     """Lead angle, efficiency both ways and self-locking of four screws."""
     screw = Screw(d_m, lead_m, f, math.radians(half_deg))
@@ -65,7 +65,7 @@ def test_screw_has_the_efficiencies_of_the_textbook(
 def test_screw_locks_itself_exactly_where_it_gives_nothing_back(
     d_m: float, lead_m: float, f: float, half_rad: float, force_N: float
 ) -> None:
-    """Lowering needs a motor torque if and only if the screw is self-locking; raising always needs more than the ideal."""
+    """Lowering needs a torque if and only if the screw locks itself; raising needs more than the ideal."""
     screw = Screw(d_m, lead_m, f, half_rad)
 
     assert screw.self_locking is (screw.lower_Nm(force_N) > 0.0)

@@ -33,8 +33,8 @@ def test_two_link_arm_needs_the_torque_of_its_closed_form() -> None:
 
     torque_Nm = postures(single(planar_leg()), "one", q, dq, ddq).torque_Nm[0]
 
-    # Double pendulum, angles from the vertical a = q1, b = q1 + q2, masses 0.8 and 0.3 kg at the ends of links of 0.2 m:
-    # by hand from the Lagrangian; torque of joint 2 acts on b, that of joint 1 on both.
+    # Double pendulum, angles from the vertical a = q1, b = q1 + q2, masses 0.8 and 0.3 kg at the ends of links of 0.2
+    # m: by hand from the Lagrangian; torque of joint 2 acts on b, that of joint 1 on both.
     m1, m2, l, g = 0.8, 0.3, 0.2, 9.81
     a, b = q[0], q[0] + q[1]
     da, db = dq[0], dq[0] + dq[1]
@@ -102,7 +102,8 @@ def test_torques_on_a_turning_falling_body_solve_lagranges_equation() -> None:
     attitude = Rotation.from_euler("xyz", [0.3, -0.5, 1.1])
 
     def base(t: float) -> Pose:
-        # rate and angular acceleration are those of the body frame at t = 0; a rotation vector w t + dw t^2/2 has them there
+        # rate and angular acceleration are those of the body frame at t = 0; a rotation vector w t + dw t^2/2 has
+        # them there
         R = (attitude * Rotation.from_rotvec(rate * t + 0.5 * turn_up * t * t)).as_matrix()
         return R, speed * t + 0.5 * acceleration * t * t
 

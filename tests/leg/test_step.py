@@ -41,7 +41,7 @@ def test_plain_python_gives_what_the_compiled_step_gives(tmp_path: Path) -> None
 
 
 def test_current_becomes_joint_torque_by_ratio_and_constant() -> None:
-    """tau = ratio Kt i, per joint."""
+    """Tau = ratio Kt i, per joint."""
     found = run(single(planar_leg()), STANDING, ticks=10)
 
     # By hand: 7 * 0.1 Nm/A * (1 A, -2 A).
@@ -62,7 +62,7 @@ def test_warm_motor_has_the_torque_constant_of_its_temperature() -> None:
 
 
 def test_encoder_that_counts_backwards_turns_angle_and_torque() -> None:
-    """angle = sign (reading - offset), and a current counts positive when it drives the reading up."""
+    """Angle = sign (reading - offset), and a current counts positive when it drives the reading up."""
     leg = planar_leg()
     leg["joint"][0] |= {"encoder_sign": -1, "encoder_offset_rad": 0.25}
 
@@ -240,7 +240,7 @@ def test_attitude_alone_tilts_gravity() -> None:
 
 
 def test_cross_sensitivity_tilts_the_sensitive_axis() -> None:
-    """h = axis + cx x + cy y, in the body frame."""
+    """H = axis + cx x + cy y, in the body frame."""
     found = run(single(planar_leg()), {"q_rad": np.zeros((3, 2))}, ticks=3, cross_axis=(0.01, -0.02))
 
     assert found["axis_B"][-1] == pytest.approx([0.01, -0.02, 1.0], abs=1e-15)  # by hand: the leg hangs straight
@@ -287,8 +287,8 @@ def test_screw_gives_the_lever_arm_of_its_triangle() -> None:
 
     found = run(single(leg), inputs, ticks=12)
 
-    # Law of cosines, worked out apart from the code: l^2 = a^2 + b^2 - 2 a b cos(gamma), dl/dgamma = a b sin(gamma)/l, where
-    # gamma is the angle at the joint between the two anchors and moves one to one with the joint.
+    # Law of cosines, worked out apart from the code: l^2 = a^2 + b^2 - 2 a b cos(gamma), dl/dgamma = a b
+    # sin(gamma)/l, where gamma is the angle at the joint between the two anchors and moves one to one with the joint.
     a, b = np.hypot(0.05, 0.12), np.hypot(0.04, 0.03)
     gamma = np.arctan2(0.05, 0.12) - (np.arctan2(0.04, -0.03) + angles)
     length = np.sqrt(a * a + b * b - 2 * a * b * np.cos(gamma))
