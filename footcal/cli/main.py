@@ -12,7 +12,7 @@ import typer
 from footcal import __version__
 from footcal.errors import FootcalError
 
-COMMANDS = ("fit", "convert", "fuse", "score", "drift", "demo")
+COMMANDS = ("fit", "convert", "fuse", "score", "drift")
 
 app = typer.Typer(
     name="footcal",
@@ -21,6 +21,7 @@ app = typer.Typer(
     no_args_is_help=True,
     rich_markup_mode="rich",
     pretty_exceptions_enable=False,
+    add_completion=False,
     context_settings={"help_option_names": ["-h", "--help"]},
 )
 

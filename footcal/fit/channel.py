@@ -11,7 +11,7 @@ from footcal.records import NS_PER_S, BoolArray, FloatArray, IntArray
 from footcal.sensor.creep import lagged
 
 SESSION_GAP_S = 120.0  # put between joined sessions, so that creep and loop start afresh
-THERMOMETER_SMOOTH_S = 2.0  # noise of the thermometer; sessions soak, so no lag is undone here
+THERMOMETER_LAG_S = 30.0  # the sensing element follows its thermometer this slowly (common practice, no source)
 RAW_EDGE = 1e-3  # of the converter's range: nearer than this to an end, a divider or pad is saturated
 
 
@@ -21,7 +21,7 @@ class Channel:
 
     t_ns: IntArray  # (n,) rising
     raw: FloatArray  # (n,) counts
-    temp_C: FloatArray  # (n,) smoothed; NaN where there is no thermometer
+    temp_C: FloatArray  # (n,) of the sensing element; NaN where there is no thermometer
     ref_N: FloatArray  # (n,) reference cell sampled alongside; NaN where there is none
     session: IntArray  # (n,) index of the session
     offset_s: FloatArray  # (sessions,) channel time = session time + offset
@@ -56,12 +56,12 @@ def lone_spikes(raw: FloatArray) -> BoolArray:
 
 
 def _smoothed_temperature(t_ns: IntArray, temp_C: FloatArray) -> FloatArray:
-    """Fill gaps between thermometer readings and take out their noise; all NaN stays NaN."""
+    """Fill gaps between thermometer readings and let the sensing element follow them; all NaN stays NaN."""
     known = np.isfinite(temp_C)
     if not known.any():
         return temp_C
     filled = np.interp(t_ns, t_ns[known], temp_C[known])
-    return lagged(t_ns, filled, THERMOMETER_SMOOTH_S)
+    return lagged(t_ns, filled, THERMOMETER_LAG_S)
 
 
 def join(sessions: list[Session]) -> Channel:

@@ -8,6 +8,7 @@ from typing import Any, Final
 import numpy as np
 
 from footcal import __version__
+from footcal.fit.channel import THERMOMETER_LAG_S
 from footcal.fit.choose import Candidate
 from footcal.fit.inputs import FitInput
 from footcal.fit.outcome import FitOutcome
@@ -124,7 +125,7 @@ def _input(data: FitInput, best: Candidate) -> dict[str, Any]:
         "power": best.fitted.terms.gamma,
         "power_offset": POWER_OFFSET,
         "temp_ref_C": data.temp_ref_C,
-        "thermometer_lag_s": 2.0,
+        "thermometer_lag_s": THERMOMETER_LAG_S,
         "lag_s": data.lag_s,
     }
 

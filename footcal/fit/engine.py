@@ -7,6 +7,7 @@ from dataclasses import replace
 from typing import Final
 
 import numpy as np
+from threadpoolctl import threadpool_limits
 
 from footcal.calfile import Calibration
 from footcal.errors import FitRefusedError
@@ -52,7 +53,12 @@ def fit_sessions(
         SettingError: kind or capacity is not known.
         FitRefusedError: the data were read, but no sound model follows from them.
     """
-    data = read_input(sessions, kind=kind, capacity_N=capacity_N, raw_max=raw_max)
+    with threadpool_limits(limits=1):  # the factors are small: more threads only wait for each other
+        return _fitted(read_input(sessions, kind=kind, capacity_N=capacity_N, raw_max=raw_max), on_try)
+
+
+def _fitted(data: FitInput, on_try: Callable[[Terms], None]) -> FitResult:
+    """Set bad steps aside, join the reference, choose the terms, check the shape, state the uncertainty."""
     middling, rows, asides = _without_bad_steps(data)
     aligned, pump = _with_reference(data, middling)
     best = choose_terms(

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
+from scipy.interpolate import CubicSpline, PPoly
 
 from footcal.errors import SessionError
 from footcal.files.session import Session
@@ -24,6 +25,7 @@ COARSE_S: Final = 0.001
 FINE_S: Final = 0.00025
 SMOOTH: Final = 4  # samples
 WORST_CORRELATION: Final = 0.8
+LONGEST_GAP_S: Final = 0.1  # between readings of the reference
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,6 +36,7 @@ class ReferenceSignal:
     force_N: FloatArray  # (m,)
     windows_s: tuple[tuple[float, float], ...]  # pump stretches, channel time
     knocks_s: tuple[tuple[float, float], ...]  # knocks, channel time; the pump stretches where there were none
+    area: PPoly  # integral of the force over time, a spline
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,7 +74,9 @@ def reference_signal(channel: Channel, sessions: list[Session]) -> ReferenceSign
         knocks += windows["knock"]
     if not times:
         return None
-    return ReferenceSignal(np.concatenate(times), np.concatenate(forces), tuple(pumps), tuple(knocks or pumps))
+    t_s, force_N = np.concatenate(times), np.concatenate(forces)
+    area = CubicSpline(t_s, force_N).antiderivative()
+    return ReferenceSignal(t_s, force_N, tuple(pumps), tuple(knocks or pumps), area)
 
 
 def _windows(session: Session, kind: str, offset_s: float) -> list[tuple[float, float]]:
@@ -148,30 +153,18 @@ def _peak(correlation: Callable[[float], float]) -> float:
 def reference_at(
     t_s: FloatArray, signal: ReferenceSignal, offset_s: float, lag_s: float, averaging_s: float
 ) -> FloatArray:
-    """Return the reference force as the foot's converter would have seen it at each time, shape (n,); NaN outside.
+    """Return the reference force as the foot's converter would have averaged it at each time, shape (n,); NaN outside.
 
-    The lag is taken as a delay, which a first-order lag is for anything slower than itself.
+    Between its readings the reference is a cubic spline: straight lines would miss 0.1 % of full scale at the turns of
+    hand pumping sampled at 80 Hz. The lag is taken as a delay, which a first-order lag is for anything slower.
     """
     ends = np.asarray(t_s) - lag_s + offset_s
     known = (ends - averaging_s >= signal.t_s[0]) & (ends <= signal.t_s[-1])
     place = np.clip(np.searchsorted(signal.t_s, ends), 1, len(signal.t_s) - 1)
-    known &= signal.t_s[place] - signal.t_s[place - 1] < 1.0
-    if averaging_s <= 0.0:
-        values = np.interp(ends, signal.t_s, signal.force_N)
-    else:
-        values = (_area(signal, ends) - _area(signal, ends - averaging_s)) / averaging_s
-    return np.where(known, values, np.nan)
-
-
-def _area(signal: ReferenceSignal, times: FloatArray) -> FloatArray:
-    """Integral of the reference, straight between its readings, up to each time."""
-    steps = np.diff(signal.t_s)
-    means = 0.5 * (signal.force_N[1:] + signal.force_N[:-1])
-    total = np.concatenate([[0.0], np.cumsum(steps * means)])
-    place = np.clip(np.searchsorted(signal.t_s, times, side="right") - 1, 0, len(steps) - 1)
-    since = np.clip(times - signal.t_s[place], 0.0, steps[place])
-    slope = (signal.force_N[place + 1] - signal.force_N[place]) / steps[place]
-    return np.asarray(total[place] + since * (signal.force_N[place] + 0.5 * since * slope))
+    known &= signal.t_s[place] - signal.t_s[place - 1] < LONGEST_GAP_S
+    values = np.full(len(ends), np.nan)
+    values[known] = (signal.area(ends[known]) - signal.area(ends[known] - averaging_s)) / averaging_s
+    return values
 
 
 def gain_and_zero(reading_N: FloatArray, reference_N: FloatArray) -> tuple[float, float]:
