@@ -138,6 +138,8 @@ def _memory_fields(legs: int, joints: int) -> list[Field]:
         ("fil_noisy_s", f, (legs,)),
         ("fil_disagree_s", f, (legs,)),
         ("fil_dead_s", f, (joints, legs)),
+        ("fil_inertia_N", f, (legs,)),  # of what hangs below the sensor, at the last tick
+        ("fil_shake_N", f, (legs,)),  # how badly it is known because it changed sharply
         ("fil_asked_Nm", f, (joints, legs)),  # torque that inertia and friction asked for at the last tick
         ("fil_jitter_Nm", f, (joints, legs)),  # how badly it is known because it changed sharply
     ]
@@ -153,7 +155,7 @@ def filter_constant_fields(legs: int, joints: int) -> list[Field]:
         "fil_moving_mean_N fil_moving_up_N fil_moving_side_N fil_touch_up_N2 fil_touch_all_N2 fil_lift_reset "
         "fil_cost_per_s fil_cost_N fil_cost_cap fil_peak_tau_s fil_floor fil_e_tau_s fil_e_part fil_e_min_N "
         "fil_read_min_N fil_on_p fil_off_p fil_on_s fil_off_s fil_early_s fil_early_off_s fil_min_N fil_zero_p "
-        "fil_zero_wait_s fil_zero_tau_s fil_zero_max_N fil_zero_N_per_s fil_zero_flag_N fil_known_N fil_start_Nm fil_timing_s fil_timing_tau_s "
+        "fil_zero_wait_s fil_zero_tau_s fil_zero_max_N fil_zero_N_per_s fil_zero_flag_N fil_known_N fil_start_Nm fil_timing_s fil_timing_tau_s fil_axial_timing_s "
         "fil_stuck_s fil_stuck_ratio fil_silent_s fil_stale_s fil_noisy_ratio fil_noisy_tau_s fil_noisy_min_N "
         "fil_disagree_chi2 fil_disagree_s fil_dead_after_s fil_dead_sds"
     )

@@ -64,13 +64,12 @@ def _dead_currents(inp: Any, l: int, s: Any, c: Any) -> bool:
         if c.fil_joint[k, l] == 0.0:
             continue
         current = inp.current_A[k, l]
-        wanted = abs(s.fil_x[3 + joints + k, l])
-        for mode in range(1, 3):
-            if s.fil_mu[mode * s.axial_N.shape[0] + l] > 0.5:
-                wanted = abs(s.fil_x[3 + joints + k, mode * s.axial_N.shape[0] + l])
+        wanted = s.tau_rigid_Nm[k, l] + s.tau_drive_Nm[k, l]
+        for i in range(3):
+            wanted -= s.jac_B[i, k, l] * s.force_B_N[i, l]
         expected = sqrt(s.tau_noise_Nm[k, l] ** 2 + s.fric_sd_Nm[k, l] ** 2)
         dead = s.fil_dead_s[k, l] > c.fil_dead_after_s[0]
-        mute = not isfinite(current) or (current == 0.0 and (dead or wanted > c.fil_dead_sds[0] * expected))
+        mute = not isfinite(current) or (current == 0.0 and (dead or abs(wanted) > c.fil_dead_sds[0] * expected))
         s.fil_dead_s[k, l] = s.fil_dead_s[k, l] + s.dt_s[0] if mute else 0.0
         if s.fil_dead_s[k, l] > c.fil_dead_after_s[0]:
             s.fil_tau_Nm2[k, l] = OFF

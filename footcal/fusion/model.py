@@ -40,7 +40,7 @@ class FusionSettings:
     touchdown_up_part: float = 0.85  # of that variance along the vertical, the rest in all directions
     lift_reset: float = 1.0  # 1: entering swing sets force, friction error and residual back; 0: it does not
     # what a stance with hardly any force costs
-    stance_cost: float = 1.0
+    stance_cost: float = 1.5
     stance_cost_share: float = 0.035
     stance_cost_cap: float = 3.0
     peak_tau_s: float = 6.0
@@ -53,13 +53,14 @@ class FusionSettings:
     # torques: what inertia and friction ask for is known no better than its timing
     torque_timing_s: float = 0.003
     torque_timing_tau_s: float = 0.005
+    axial_timing_s: float = 0.0005
     # decision
     on_p: float = 0.9
     off_p: float = 0.1
-    on_s: float = 0.003
-    off_s: float = 0.004
-    early_s: float = 0.060  # within this time after touchdown ...
-    early_off_s: float = 0.014  # ... lift-off must last this long
+    on_s: float = 0.001
+    off_s: float = 0.003
+    early_s: float = 0.100  # within this time after touchdown ...
+    early_off_s: float = 0.020  # ... lift-off must last this long
     contact_min_share: float = 0.017
     known_sd_share: float = 0.12  # torque alone decides where it sees the vertical force at least this well
     # zero observer
@@ -204,6 +205,7 @@ def _fill_plain(settings: FusionSettings, c: np.record) -> None:
         "fil_start_Nm": settings.start_torque_sd_Nm,
         "fil_timing_s": settings.torque_timing_s,
         "fil_timing_tau_s": settings.torque_timing_tau_s,
+        "fil_axial_timing_s": settings.axial_timing_s,
         "fil_stuck_s": settings.stuck_s,
         "fil_stuck_ratio": settings.stuck_ratio,
         "fil_silent_s": settings.silent_s,

@@ -31,7 +31,12 @@ def readings(s: Any, c: Any) -> None:
     """Reading of each leg and its variance, before health has its say; what gives nothing new gets variance OFF."""
     legs = s.axial_N.shape[0]
     joints = s.tau_new.shape[0]
+    dt = s.dt_s[0]
+    fade = exp(-dt / c.fil_timing_tau_s[0])
+    rate = c.fil_axial_timing_s[0] / dt if dt > 0.0 and s.reset[0] == 0 else 0.0
     for l in range(legs):
+        s.fil_shake_N[l] = max(fade * s.fil_shake_N[l], rate * abs(s.axial_inertia_N[l] - s.fil_inertia_N[l]))
+        s.fil_inertia_N[l] = s.axial_inertia_N[l]
         u = s.axial_u_N[l]
         slow = c.fil_e_part[0] * u * u
         unloaded = c.sen_unload_share[l] * s.fil_peak_N[l]
@@ -42,7 +47,7 @@ def readings(s: Any, c: Any) -> None:
             s.fil_e_sd_N[l] = sqrt(slow + unloaded * unloaded + c.fil_e_min_N[0] ** 2)
             if s.axial_new[l] == 1:
                 s.fil_read_N[l] = s.axial_N[l] - s.axial_inertia_N[l] - s.fil_zero_N[l] - c.fil_hang_zero_N[l]
-                s.fil_read_N2[l] = u * u - slow + c.fil_read_min_N[0] ** 2
+                s.fil_read_N2[l] = u * u - slow + c.fil_read_min_N[0] ** 2 + s.fil_shake_N[l] ** 2
         for k in range(joints):
             s.fil_tau_Nm2[k, l] = OFF
             if s.tau_new[k, l] == 1 and c.fil_joint[k, l] > 0.0:

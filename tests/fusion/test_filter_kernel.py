@@ -14,7 +14,7 @@ from tests.fusion.lone import LoneFilter, lone_filter
 from tests.fusion.oracle import Leg, imm, kalman_filter, set_matrices
 
 WEIGHT_N = 176.58
-LINEAR = replace(FusionSettings(), touchdown_sd_share=0.0, lift_reset=0.0, stance_cost=0.0, mode_floor=0.0, torque_timing_s=0.0)
+LINEAR = replace(FusionSettings(), touchdown_sd_share=0.0, lift_reset=0.0, stance_cost=0.0, mode_floor=0.0, torque_timing_s=0.0, axial_timing_s=0.0)
 
 
 def leg_of(lone: LoneFilter) -> Leg:
