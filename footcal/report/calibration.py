@@ -128,7 +128,7 @@ def _table_of_points(result: FitResult, points: HoldPoints) -> Table:
     """Return the errors by tenths of full scale, zero apart."""
     full_N = result.data.capacity_N
     tenth = np.where(points.of("zero"), -1, np.clip(points.load_N // (0.1 * full_N), 0, 9))
-    form = f"+.{decimals(full_N)}f"
+    form = f"+z.{decimals(full_N)}f"
     rows = []
     for value in np.unique(tenth):
         mine = tenth == value
@@ -144,8 +144,8 @@ def _table_of_points(result: FitResult, points: HoldPoints) -> Table:
                 number(U_N, form[1:]),
             )
         )
-    header = ("range", "mean load, N", "holds", "error up, N", "error down, N", "RMS, N", "largest, N", "U (k = 2), N")
-    return Table("Errors by load", header, tuple(rows))
+    header = ("range", "mean load, N", "holds", "loading, N", "unloading, N", "RMS, N", "largest, N", "U (k = 2), N")
+    return Table("Errors by load: means, loading and unloading apart", header, tuple(rows))
 
 
 def _trust(result: FitResult, points: HoldPoints) -> Section:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -30,8 +31,6 @@ def curve_pictures(result: FitResult, points: HoldPoints) -> tuple[Picture, ...]
     t_s = data.channel.t_s - float(data.channel.t_s[0])
     force_N = result.calibration.force(t_s, data.channel.raw, data.channel.temp_C).force_N
     aside = [_place(result, entry.hold) for entry in result.asides]
-    before_N, after_N = loop_width_N(points, points.before_N), loop_width_N(points, points.after_N)
-    zero, top = int(np.argmin(points.load_N)), int(np.argmax(points.load_N))
     return (
         picture(
             draw_course(new_figure(180.0, 82.0), t_s, force_N, data.channel.temp_C, points, aside),
@@ -41,23 +40,49 @@ def curve_pictures(result: FitResult, points: HoldPoints) -> tuple[Picture, ...]
             f"{len(aside)} steps set aside.",
             wide=True,
         ),
-        picture(
-            draw_loading_curve(new_figure(), points.load_N, points.raw, points.of("up")),
-            "loading",
-            "Loading curve",
-            f"Reading against load: {points.raw[zero]:.0f} counts at {points.load_N[zero]:.1f} N, "
-            f"{points.raw[top]:.0f} counts at {points.load_N[top]:.1f} N, loading and unloading apart.",
-            caption="Mean counts in each settled window.",
-        ),
-        picture(
-            draw_loop(new_figure(height_mm=92.0), points),
-            "loop",
-            "Loop, before and after",
-            f"Error over each up and down cycle. By the curve alone the loop is {number(before_N, '.3g')} N wide, "
-            f"with hysteresis and creep undone {number(after_N, '.3g')} N.",
-            caption=f"Widest gap at one load: {number(before_N, '.3g')} N by the curve alone, "
-            f"{number(after_N, '.3g')} N by the whole model.",
-        ),
+        loading_picture(points, "loading", "Loading curve"),
+        loop_picture(points, "loop", "Loop, before and after"),
+    )
+
+
+def loading_picture(points: HoldPoints, name: str, title: str) -> Picture:
+    """Return reading against load."""
+    zero, top = int(np.argmin(points.load_N)), int(np.argmax(points.load_N))
+    return picture(
+        draw_loading_curve(new_figure(height_mm=92.0), points.load_N, points.raw, points.of("up")),
+        name,
+        title,
+        f"Reading against load: {points.raw[zero]:.0f} counts at {points.load_N[zero]:.1f} N, "
+        f"{points.raw[top]:.0f} counts at {points.load_N[top]:.1f} N, loading and unloading apart.",
+        caption="Mean counts in each settled window.",
+    )
+
+
+def loop_picture(points: HoldPoints, name: str, title: str) -> Picture:
+    """Return the error over each cycle, by the curve alone and by the whole model."""
+    before_N, after_N = loop_width_N(points, points.before_N), loop_width_N(points, points.after_N)
+    widest = f"{number(before_N, '.3g')} N by the curve alone, {number(after_N, '.3g')} N by the whole model"
+    return picture(
+        draw_loop(new_figure(height_mm=92.0), points),
+        name,
+        title,
+        f"Error over each up and down cycle; the widest gap at one load is {widest}.",
+        caption=f"Widest gap at one load: {widest}.",
+    )
+
+
+def foot_pictures(result: FitResult, points: HoldPoints, name: str, title: str) -> tuple[Picture, ...]:
+    """Return the short set for a page about several feet: loading curve, loop, errors by force."""
+    band_N = 2.0 * result.calibration.u_static_N(points.load_N)
+    figure = draw_errors(new_figure(), points.load_N, points.after_N, points.of("up"), "load, N", band_N)
+    rms_N = float(np.sqrt(np.mean(points.after_N**2)))
+    words = f"{len(points.after_N)} holds, RMS {rms_N:.3g} N, largest {_largest(points.after_N)}."
+    trust = trust_pictures(result, points)[0]
+    return (
+        loading_picture(points, f"loading_{name}", f"Loading curve, {title}"),
+        loop_picture(points, f"loop_{name}", f"Loop, {title}"),
+        picture(figure, f"errors_{name}", f"Errors by force, {title}", words, caption=words),
+        replace(trust, name=f"uncertainty_{name}", title=f"Stated uncertainty, {title}"),
     )
 
 

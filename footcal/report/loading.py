@@ -125,12 +125,12 @@ def draw_loop(figure: Figure, holds: HoldPoints) -> Figure:
 
 
 def _up_down_cycles(holds: HoldPoints) -> list[np.ndarray]:
-    """Return the holds of each cycle that goes up and comes down again."""
+    """Return the holds of each cycle that goes up and comes down again once; minor loops are none."""
     plain, found = holds.plain(), []
     for cycle in np.unique(holds.cycle[plain]):
         mine = np.flatnonzero(plain & (holds.cycle == cycle))
-        ways = {holds.direction[i] for i in mine}
-        if {"up", "down"} <= ways:
+        ways = [holds.direction[i] for i in mine if holds.direction[i] != "zero"]
+        if {"up", "down"} <= set(ways) and "up" not in ways[ways.index("down") :]:
             found.append(mine)
     return found
 
