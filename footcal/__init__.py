@@ -14,7 +14,6 @@ _PUBLIC = {  # public name -> module it lives in; imported when first used, so t
     "FitResult": "footcal.fit.engine",
     "FootcalError": "footcal.errors",
     "ForceColumns": "footcal.sensor.compensator",
-    "ForceModel": "footcal.fit.estimator",
     "Health": "footcal.records",
     "LegEstimate": "footcal.records",
     "Session": "footcal.files.session",
@@ -22,7 +21,12 @@ _PUBLIC = {  # public name -> module it lives in; imported when first used, so t
     "convert_log": "footcal.calfile.convert",
     "curve": "footcal.fit.curve",
     "fit_sessions": "footcal.fit.engine",
+    "fleet_verdicts": "footcal.drift.verdict",
+    "Fusion": "footcal.fusion.engine",
+    "History": "footcal.drift.history",
+    "Robot": "footcal.leg.description",
     "mass_force": "footcal.physics.force",
+    "read_robot_log": "footcal.files.robot_log",
     "read_session": "footcal.files.session",
 }
 

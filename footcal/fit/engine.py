@@ -151,6 +151,8 @@ def _looked_at_again(
 def _notes(data: FitInput, best: Candidate, aligned: Aligned | None) -> list[str]:
     """Say what the sessions could not tell, and what was assumed."""
     notes = list(data.assumed)
+    if not any(hold.direction == "zero" for hold in data.holds):
+        notes.append("no zero was recorded: below the lowest load the curve is extrapolated")
     if not data.channel.has_temperature:
         notes.append("no temperature was recorded: zero and span against temperature are not corrected")
     elif data.temperatures < 2:

@@ -61,7 +61,7 @@ def read_input(
         session_of += [number] * len(found)
     rows = hold_rows(channel, holds, np.array(session_of), full_scale_N)
     stated_max = raw_max if raw_max is not None else sessions[0].meta.raw_max
-    form = raw_form(kind, channel.raw, first_press(channel, rows, holds), stated_max)
+    form = raw_form(kind, channel.raw, first_press(channel, rows), stated_max)
     temp_ref_C, temperatures = temperature_levels(channel, rows)
     return FitInput(
         sessions=tuple(sessions),

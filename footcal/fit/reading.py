@@ -7,7 +7,7 @@ from typing import Final
 
 import numpy as np
 
-from footcal.errors import SessionError, SettingError
+from footcal.errors import FitRefusedError, SessionError, SettingError
 from footcal.fit.channel import Channel
 from footcal.fit.passes import Reading
 from footcal.fit.robust import robust_sd
@@ -56,13 +56,13 @@ def raw_form(kind: str, raw: FloatArray, loaded_minus_zero: float, raw_max: floa
     return RawForm(wiring, 0.0, raw_max, tuple(assumed))
 
 
-def first_press(channel: Channel, rows: Rows, holds: list[Hold]) -> float:
-    """Return the mean raw reading of the loaded rows less that of the zero rows, counts.
+def first_press(channel: Channel, rows: Rows) -> float:
+    """Return the mean raw reading of the higher loads less that of the lowest (zero, where it was recorded), counts.
 
     Raises:
         SessionError: the reading does not move with the load.
     """
-    zero = np.array([holds[i].direction == "zero" for i in rows.hold])
+    zero = rows.target == rows.target.min()
     means = np.array([channel.raw[a:b].mean() for a, b in zip(rows.start, rows.stop, strict=True)])
     top = rows.target >= 0.5 * rows.target.max()
     moved = float(np.median(means[top]) - np.median(means[zero]))
@@ -74,15 +74,26 @@ def first_press(channel: Channel, rows: Rows, holds: list[Hold]) -> float:
 
 
 def reading_of(channel: Channel, rows: Rows, holds: list[Hold], form: RawForm, temp_ref_C: float) -> Reading:
-    """Return ratio, scaled temperature, zero, span and noise of the channel."""
+    """Return ratio, scaled temperature, zero, span and noise of the channel.
+
+    Raises:
+        FitRefusedError: the highest load does not read beyond zero.
+    """
     ratio = arm_ratios(channel.raw, form.raw_max, form.wiring)
     zero_rows = [i for i, hold in enumerate(rows.hold) if holds[hold].direction == "zero"]
+    zero_rows = zero_rows or [int(np.argmin(rows.target))]  # no zero was recorded: the lowest load stands in
     first = rows.hold[zero_rows[0]]
     opening = np.concatenate([ratio[rows.start[i] : rows.stop[i]] for i in zero_rows if rows.hold[i] == first])
     u_zero = float(np.median(opening))
     highest = int(np.argmax(rows.target))
     sign = 1.0 if np.median(ratio[rows.start[highest] : rows.stop[highest]]) > u_zero else -1.0
     reach = float(np.quantile(sign * (ratio - u_zero), 0.995))
+    if reach <= 0.0:
+        raise FitRefusedError(
+            "readings.csv, raw",
+            "the reading at the highest load lies on the wrong side of zero, or on it",
+            "Check the masses of the steps, and whether the sensor saturates.",
+        )
     theta = np.zeros(len(ratio)) if not channel.has_temperature else (channel.temp_C - temp_ref_C) / THETA_SCALE_K
     top = float(rows.target[highest])
     samples_per_row = float(np.median(rows.stop - rows.start))

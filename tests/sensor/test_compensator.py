@@ -80,7 +80,7 @@ def test_an_empty_reading_repeats_the_last_force() -> None:
 
 
 def test_a_time_that_does_not_advance_changes_nothing() -> None:
-    """dt <= 0 is dropped."""
+    """An interval of 0 or less is dropped."""
     found = Compensator(straight_line()).run(
         np.array([10, 10, 5, 20]) * MS, np.array([100.0, 900.0, 900.0, 110.0]), np.full(4, 22.0)
     )

@@ -47,7 +47,7 @@ def test_the_creep_of_a_standard_linear_solid_is_reproduced() -> None:
     step = np.full(len(t_s), stress)
 
     creep_state = stress - lagged(np.rint(t_s * 1e9).astype(np.int64) + 1, step, tau_s=15.0)
-    # A lag that starts settled sees no step, so the step is put in by linearity: the remaining state is sigma exp(-t/15).
+    # A lag that starts settled sees no step, so a zero is put before it: what remains is sigma exp(-t / 15).
     assert creep_state == pytest.approx(0.0, abs=1e-12)
     started = np.concatenate([[0.0], step])
     t_ns = np.concatenate([[0], np.rint(t_s * 1e9).astype(np.int64) + 1])

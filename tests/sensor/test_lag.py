@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 
@@ -13,7 +15,7 @@ def undone(raw: np.ndarray, dt_s: float, lag_s: float) -> np.ndarray:
     """Run the inverse over a whole signal that starts settled."""
     a, phi = hold_factors(dt_s, lag_s)
     found = [raw[0]]
-    for old, new in zip(raw[:-1], raw[1:], strict=True):
+    for old, new in pairwise(raw):
         found.append(undo_lag(new, old, found[-1], a, phi))
     return np.array(found)
 
@@ -25,7 +27,7 @@ def test_undoing_a_lag_gives_back_the_input(lag_s: float) -> None:
     x = np.cumsum(rng.normal(size=300))
     a, phi = hold_factors(0.001, lag_s)
     raw = [x[0]]
-    for old, new in zip(x[:-1], x[1:], strict=True):
+    for old, new in pairwise(x):
         raw.append(lag_step(raw[-1], old, new, a, phi))
     assert undone(np.array(raw), 0.001, lag_s) == pytest.approx(x, abs=1e-8)
 

@@ -13,7 +13,7 @@ SUPPLY, GROUND = 1, 2
 
 
 def test_a_pad_to_supply_at_a_quarter_of_the_range_has_a_ratio_of_one_third() -> None:
-    """raw / (max - raw) = 1000 / 3000."""
+    """By the law, raw / (max - raw) = 1000 / 3000."""
     assert arm_ratio(1000.0, 4000.0, SUPPLY) == pytest.approx(1.0 / 3.0, rel=1e-15)  # by hand
 
 
