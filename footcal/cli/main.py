@@ -12,7 +12,7 @@ import typer
 from footcal import __version__
 from footcal.errors import FootcalError
 
-COMMANDS = ("fit", "convert", "fuse", "score", "drift")
+COMMANDS = ("fit", "convert", "fuse", "score", "drift", "demo")
 
 app = typer.Typer(
     name="footcal",

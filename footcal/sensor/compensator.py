@@ -59,10 +59,6 @@ _run = _make_run(source_key("footcal.sensor"))
 
 class Compensator:
     """Turns the readings of one foot into force with its standard uncertainty; remembers creep and loop between calls.
-
-    >>> from footcal.sensor.compensator import Compensator
-    >>> Compensator.__name__
-    'Compensator'
     """
 
     def __init__(self, model: SensorModel) -> None:
@@ -126,7 +122,7 @@ class Compensator:
             u_N,
             flags,
         )
-        return ForceColumns(t_s=times * 1e-9, force_N=force_N, u_N=u_N, flags=flags)
+        return ForceColumns(t_s=np.asarray(times * 1e-9), force_N=force_N, u_N=u_N, flags=flags)
 
     def step(self, t_ns: int, raw: float, temp_C: float = float("nan")) -> tuple[float, float, int]:
         """Return force in newtons, its standard uncertainty, and flags for one reading (the same kernel as `run`)."""

@@ -53,7 +53,7 @@ def stepped(loads_N: np.ndarray, raw: np.ndarray, **meta: Any) -> Session:
 
 
 def test_real_load_cell_readings_come_back_within_three_certified_residual_deviations() -> None:
-    """NIST StRD Pontius as a session: raw = deflection, load as the force; 3 sd of deflection over the curve's slope."""
+    """NIST StRD Pontius as a session: raw = deflection, load as force; 3 sd of deflection over the slope."""
     case = tomllib.loads((REFERENCE / "strd_certified.toml").read_text(encoding="utf-8"))["Pontius"]
     rows = tables.rows("strd_pontius.csv")
     load, deflection = (np.array([float(row[key]) for row in rows]) for key in ("load", "deflection"))
