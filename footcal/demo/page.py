@@ -13,6 +13,7 @@ from footcal.demo.walks import FusedWalk
 from footcal.drift.records import StoredCheck
 from footcal.drift.verdict import FootVerdict
 from footcal.fusion.align import truth_at
+from footcal.records import BoolArray, FloatArray
 from footcal.report.calibration import KIND_WORDS
 from footcal.report.calibration_pictures import foot_pictures
 from footcal.report.drift import DriftSeries, draw_drift
@@ -22,6 +23,7 @@ from footcal.report.style import new_figure
 from footcal.report.walk import draw_contacts, draw_forces, draw_probability
 
 SHOWN_s = 2.6  # two strides of the demo's walk
+PROBABILITY_s = 0.4
 
 
 def write_demo_report(result: DemoResult, path: str | os.PathLike[str]) -> None:
@@ -43,11 +45,11 @@ def demo_page(result: DemoResult) -> Page:
         figures=(
             *((f"contact right, {walk.drive}", value) for walk, value in zip(result.walks, right, strict=True)),
             *(
-                (f"vertical RMSE, {walk.drive}", f"{walk.score.force.vertical_rmse_pct:.1f} % of weight")
+                (f"vertical RMSE, {walk.drive}, of weight", f"{walk.score.force.vertical_rmse_pct:.1f} %")
                 for walk in result.walks
                 if walk.score.force
             ),
-            ("feet that need action", f"{len(bad)} of {len(result.verdicts)} checked"),
+            ("feet that need action", f"{len(bad)} of {len(result.verdicts)}"),
         ),
         sections=(
             _feet(result),
@@ -83,15 +85,19 @@ def _of_foot(tried: TriedFoot) -> tuple[Picture, ...]:
 
 
 def _walk(walk: FusedWalk) -> Section:
-    t_s = walk.estimate.t_s
-    true_N, true_contact = truth_at(walk.truth, t_s, 0.0)
+    true_N, true_contact = truth_at(walk.truth, walk.estimate.t_s, 0.0)
     truth = true_contact > 0.5
-    middle = 0.5 * float(t_s[0] + t_s[-1])
-    part = (t_s >= middle - 0.5 * SHOWN_s) & (t_s <= middle + 0.5 * SHOWN_s)
-    contact = walk.estimate.contact == 1
-    force, found = walk.score.force, walk.score.contact
-    rmse = f"{force.vertical_rmse_N:.1f} N ({force.vertical_rmse_pct:.1f} % of body weight)" if force else "unknown"
-    forces = draw_forces(
+    return Section(
+        f"Walk on {walk.drive} drives",
+        tables=(Table("Errors of the fusion", WALK_HEADER, walk_rows([walk])),),
+        pictures=(_forces(walk, true_N), _contacts(walk, truth), _probability(walk, truth)),
+    )
+
+
+def _forces(walk: FusedWalk, true_N: FloatArray) -> Picture:
+    t_s, force = walk.estimate.t_s, walk.score.force
+    part = np.abs(t_s - 0.5 * (t_s[0] + t_s[-1])) <= 0.5 * SHOWN_s
+    figure = draw_forces(
         new_figure(180.0, 110.0),
         t_s[part],
         walk.estimate.force_B_N[part, :, 2],
@@ -99,48 +105,60 @@ def _walk(walk: FusedWalk) -> Section:
         true_N[part, :, 2],
         walk.legs,
     )
-    contacts = draw_contacts(new_figure(180.0, 70.0, left_mm=26.0), t_s, contact, truth, walk.legs)
-    p_part = (t_s >= middle - 0.5) & (t_s <= middle + 0.5)
-    chosen = int(np.argmax([np.abs(np.diff(truth[p_part, l].astype(float))).sum() for l in range(len(walk.legs))]))
-    probability = draw_probability(
+    rmse = f"{force.vertical_rmse_N:.1f} N ({force.vertical_rmse_pct:.1f} % of body weight)" if force else "unknown"
+    return picture(
+        figure,
+        f"walk_{walk.drive}_forces",
+        "Vertical force over two strides",
+        f"Vertical ground reaction of {len(walk.legs)} legs, estimate with a band of two standard deviations, and "
+        f"truth; over the whole walk the RMSE in stance is {rmse}.",
+        wide=True,
+    )
+
+
+def _contacts(walk: FusedWalk, truth: BoolArray) -> Picture:
+    t_s, found = walk.estimate.t_s, walk.score.contact
+    figure = draw_contacts(new_figure(180.0, 70.0, left_mm=26.0), t_s, walk.estimate.contact == 1, truth, walk.legs)
+    return picture(
+        figure,
+        f"walk_{walk.drive}_contacts",
+        "Who stands when",
+        f"Contact of {len(walk.legs)} legs over {t_s[-1] - t_s[0]:.1f} s: {found.right_pct:.1f} % of samples right, "
+        f"{found.touchdown.matched} of {found.touchdown.edges} touchdowns found, "
+        f"{found.touchdown.median_ms:.0f} ms late in the median.",
+        caption="Filled: estimate. Hatched: truth. Ticks mark where they differ.",
+        wide=True,
+    )
+
+
+def _probability(walk: FusedWalk, truth: BoolArray) -> Picture:
+    t_s = walk.estimate.t_s
+    touchdown_s, leg = _middle_touchdown(t_s, truth)
+    part = np.abs(t_s - touchdown_s) <= 0.5 * PROBABILITY_s
+    figure = draw_probability(
         new_figure(180.0, 55.0),
-        t_s[p_part],
-        walk.estimate.p_contact[p_part, chosen],
-        contact[p_part, chosen],
-        truth[p_part, chosen],
+        t_s[part],
+        walk.estimate.p_contact[part, leg],
+        walk.estimate.contact[part, leg] == 1,
+        truth[part, leg],
     )
-    name = f"walk_{walk.drive}"
-    return Section(
-        f"Walk on {walk.drive} drives",
-        tables=(Table("Errors of the fusion", WALK_HEADER, walk_rows([walk])),),
-        pictures=(
-            picture(
-                forces,
-                f"{name}_forces",
-                "Vertical force over two strides",
-                f"Vertical ground reaction of four legs, estimate with a band of two standard deviations, and truth; "
-                f"over the whole walk the RMSE in stance is {rmse}.",
-                wide=True,
-            ),
-            picture(
-                contacts,
-                f"{name}_contacts",
-                "Who stands when",
-                f"Contact of four legs over {t_s[-1] - t_s[0]:.1f} s: {found.right_pct:.1f} % of samples are right, "
-                f"{found.touchdown.matched} of {found.touchdown.edges} touchdowns found, "
-                f"{found.touchdown.median_ms:.0f} ms late in the median.",
-                caption="Filled: estimate. Hatched: truth. Ticks mark where they differ.",
-                wide=True,
-            ),
-            picture(
-                probability,
-                f"{name}_probability",
-                f"Probability of contact, {walk.legs[chosen]}, one second",
-                "Probability of contact with the decision made from it, and the truth shaded.",
-                wide=True,
-            ),
-        ),
+    return picture(
+        figure,
+        f"walk_{walk.drive}_probability",
+        f"Probability of contact, {walk.legs[leg]}, round a touchdown",
+        f"Probability that {walk.legs[leg]} stands, the decision made from it, and the truth shaded, over "
+        f"{PROBABILITY_s:g} s round the touchdown at {touchdown_s:.2f} s.",
+        wide=True,
     )
+
+
+def _middle_touchdown(t_s: FloatArray, truth: BoolArray) -> tuple[float, int]:
+    """Return time and leg of the true touchdown nearest to the middle of the walk."""
+    rows, legs = np.nonzero(np.diff(truth.astype(np.int8), axis=0) == 1)
+    if not len(rows):
+        return float(t_s[len(t_s) // 2]), 0
+    nearest = int(np.argmin(np.abs(rows - len(t_s) // 2)))
+    return float(t_s[rows[nearest]]), int(legs[nearest])
 
 
 def _drift(result: DemoResult) -> Section:

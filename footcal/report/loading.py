@@ -73,10 +73,12 @@ def draw_loading_curve(figure: Figure, load_N: FloatArray, raw: FloatArray, risi
     """
     axes = figure.subplots()
     up = np.asarray(rising, dtype=bool)
+    thousands = len(raw) > 0 and float(np.nanmax(np.abs(raw))) >= 1e5
+    shown, label = (raw / 1e3, "reading, 1000 counts") if thousands else (raw, "reading, counts")
     for mine, look, words in ((up, DEEP, "loading"), (~up, AMBER, "unloading")):
         axes.plot(
             load_N[mine],
-            raw[mine],
+            shown[mine],
             linestyle="",
             marker=look.marker,
             markersize=4.0,
@@ -84,7 +86,7 @@ def draw_loading_curve(figure: Figure, load_N: FloatArray, raw: FloatArray, risi
             markeredgecolor=look.colour,
             label=words,
         )
-    dress(axes, "load, N", "reading, counts")
+    dress(axes, "load, N", label)
     axes.ticklabel_format(axis="y", style="plain", useOffset=False)
     legend(axes)
     return figure

@@ -73,7 +73,9 @@ def dress(axes: Axes, x_label: str, y_label: str, *, grid: str = "both") -> None
 
 
 def legend(axes: Axes, *, columns: int = 3) -> None:
-    """Put the legend above the axes, where it hides nothing."""
+    """Put the legend above the axes, where it hides nothing; none where nothing has a name."""
+    if not axes.get_legend_handles_labels()[0]:
+        return
     axes.legend(
         loc="lower left",
         bbox_to_anchor=(0.0, 1.0),

@@ -35,6 +35,9 @@ def draw_forces(
         axes.text(0.01, 0.97, leg, transform=axes.transAxes, va="top", fontsize=TEXT_pt, fontweight="bold", color=INK)
         last_row = l >= len(legs) - columns
         dress(axes, "time, s" if last_row else "", "fz, N" if l % columns == 0 else "")
+    top_N = float(np.nanmax(np.concatenate([[1.0], estimate_N.ravel(), truth_N.ravel()])))
+    panels[0].set_ylim(-0.12 * top_N, 1.2 * top_N)  # a spike of the band may leave the picture
+    panels[0].margins(x=0.01)
     for axes in panels[len(legs) :]:
         axes.set_axis_off()
     legend(panels[0])
@@ -117,6 +120,7 @@ def draw_probability(
         t_s, 1.06 * contact, where="post", color=PLUM.colour, linestyle=(0, (4, 2)), linewidth=1.1, label="decided"
     )
     axes.set_ylim(-0.04, 1.12)
+    axes.margins(x=0.01)
     dress(axes, "time, s", "contact")
     legend(axes)
     return figure
