@@ -25,6 +25,7 @@ def couple_motion(s: Any) -> None:
                 dq += m * s.leg_dphi[i, k]
                 ddq += m * s.leg_ddphi[i, k]
             s.leg_q[j, k], s.leg_dq[j, k], s.leg_ddq[j, k] = q, dq, ddq
+            s.leg_sin[j, k], s.leg_cos[j, k] = np.sin(q), np.cos(q)
 
 
 @inner

@@ -83,7 +83,13 @@ def carry(
 
 @inner
 def link_wrench(s: Any, j: int) -> None:
-    """Force m a_c and moment about the joint origin that move link j: I u + w x (I w) + r x m a_c."""
+    """Force and moment at joint j: m a_c and I u + w x (I w) + r x m a_c of its link, and what joint j + 1 asks.
+
+    The part of the moment along the axis is the motor's: tau = z . N. To be called from the last joint to the first.
+    """
+    if j < 0 or j > 5:  # never; see chain.next_joint
+        return
+    i = j + 1
     for k in range(s.leg_q.shape[1]):
         R0, R1, R2 = s.leg_R[0, j, k], s.leg_R[1, j, k], s.leg_R[2, j, k]
         R3, R4, R5 = s.leg_R[3, j, k], s.leg_R[4, j, k], s.leg_R[5, j, k]
@@ -105,36 +111,25 @@ def link_wrench(s: Any, j: int) -> None:
         nx = xx * ax + xy * ay + xz * az + oy * hz - oz * hy
         ny = xy * ax + yy * ay + yz * az + oz * hx - ox * hz
         nz = xz * ax + yz * ay + zz * az + ox * hy - oy * hx
-        s.leg_F[0, j, k] = fx
-        s.leg_F[1, j, k] = fy
-        s.leg_F[2, j, k] = fz
-        s.leg_N[0, j, k] = R0 * nx + R1 * ny + R2 * nz + ry * fz - rz * fy
-        s.leg_N[1, j, k] = R3 * nx + R4 * ny + R5 * nz + rz * fx - rx * fz
-        s.leg_N[2, j, k] = R6 * nx + R7 * ny + R8 * nz + rx * fy - ry * fx
-
-
-@inner
-def hand_back(s: Any, j: int) -> None:
-    """Add to link j what link j + 1 asks of it, before the torques are read off."""
-    if j < 0 or j > 4:  # never; see chain.next_joint
-        return
-    for k in range(s.leg_q.shape[1]):
-        i = j + 1
-        fx, fy, fz = s.leg_F[0, i, k], s.leg_F[1, i, k], s.leg_F[2, i, k]
-        rx = s.leg_p[0, i, k] - s.leg_p[0, j, k]
-        ry = s.leg_p[1, i, k] - s.leg_p[1, j, k]
-        rz = s.leg_p[2, i, k] - s.leg_p[2, j, k]
-        s.leg_F[0, j, k] += fx
-        s.leg_F[1, j, k] += fy
-        s.leg_F[2, j, k] += fz
-        s.leg_N[0, j, k] += s.leg_N[0, i, k] + ry * fz - rz * fy
-        s.leg_N[1, j, k] += s.leg_N[1, i, k] + rz * fx - rx * fz
-        s.leg_N[2, j, k] += s.leg_N[2, i, k] + rx * fy - ry * fx
+        px = s.leg_p[0, i, k] - s.leg_p[0, j, k]
+        py = s.leg_p[1, i, k] - s.leg_p[1, j, k]
+        pz = s.leg_p[2, i, k] - s.leg_p[2, j, k]
+        gx, gy, gz = s.leg_F[0, i, k], s.leg_F[1, i, k], s.leg_F[2, i, k]
+        mx = R0 * nx + R1 * ny + R2 * nz + ry * fz - rz * fy + s.leg_N[0, i, k] + py * gz - pz * gy
+        my = R3 * nx + R4 * ny + R5 * nz + rz * fx - rx * fz + s.leg_N[1, i, k] + pz * gx - px * gz
+        mz = R6 * nx + R7 * ny + R8 * nz + rx * fy - ry * fx + s.leg_N[2, i, k] + px * gy - py * gx
+        s.leg_F[0, j, k] = fx + gx
+        s.leg_F[1, j, k] = fy + gy
+        s.leg_F[2, j, k] = fz + gz
+        s.leg_N[0, j, k] = mx
+        s.leg_N[1, j, k] = my
+        s.leg_N[2, j, k] = mz
+        s.tau_rigid_Nm[j, k] = s.leg_z[0, j, k] * mx + s.leg_z[1, j, k] * my + s.leg_z[2, j, k] * mz
 
 
 @inner
 def below_sensor(s: Any) -> None:
-    """h.m_d(g - a_c): what the mass below the sensor takes from the ground's push before the sensor feels it."""
+    """h.m_d(g - a_c): what the mass below the sensor takes of the ground's push before the sensor feels it."""
     j = s.leg_q.shape[0] - 1
     for k in range(s.leg_q.shape[1]):
         cx, cy, cz = s.leg_foot[DISTAL, k], s.leg_foot[DISTAL + 1, k], s.leg_foot[DISTAL + 2, k]
@@ -150,15 +145,3 @@ def below_sensor(s: Any) -> None:
         s.axial_inertia_N[k] = -s.leg_foot[DISTAL_KG, k] * (
             s.axis_B[0, k] * ax + s.axis_B[1, k] * ay + s.axis_B[2, k] * az
         )
-
-
-@inner
-def rigid_torques(s: Any) -> None:
-    """The part of each moment that its joint's motor carries: z_j . N_j."""
-    for k in range(s.leg_q.shape[1]):
-        for j in range(s.leg_q.shape[0]):
-            s.tau_rigid_Nm[j, k] = (
-                s.leg_z[0, j, k] * s.leg_N[0, j, k]
-                + s.leg_z[1, j, k] * s.leg_N[1, j, k]
-                + s.leg_z[2, j, k] * s.leg_N[2, j, k]
-            )

@@ -124,13 +124,17 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("leg_sin", "f8", (J, L)),
         ("leg_cos", "f8", (J, L)),
         ("leg_R", "f8", (9, J, L)),  # body <- link, row by row
-        ("leg_p", "f8", (3, J, L)),  # joint origins
+        ("leg_p", "f8", (3, J + 1, L)),  # joint origins
         ("leg_z", "f8", (3, J, L)),  # joint axes
         ("leg_av", "f8", (3, J, L)),  # angular rate, angular acceleration, acceleration - gravity of the joint origin
         ("leg_aa", "f8", (3, J, L)),
         ("leg_la", "f8", (3, J, L)),
-        ("leg_F", "f8", (3, J, L)),  # force and moment that move the link
-        ("leg_N", "f8", (3, J, L)),
+        (
+            "leg_F",
+            "f8",
+            (3, J + 1, L),
+        ),  # force and moment a joint hands on to its link; the row after the last joint is 0
+        ("leg_N", "f8", (3, J + 1, L)),
         ("leg_ratio", "f8", (J, L)),
         ("leg_dratio", "f8", (J, L)),
         ("leg_load", "f8", (J, L)),  # actuator torque that the load asks for

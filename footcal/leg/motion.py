@@ -12,7 +12,8 @@ from typing import Any
 import numpy as np
 
 from footcal.leg.compiled import inner
-from footcal.leg.fields import DQ_TAU_S, ENC_OFF, ENC_SIGN, HERE, LEAD, W_TAU_S
+from footcal.leg.elementary import HALF_PI_HIGH, HALF_PI_LOW, TWO_OVER_PI, cosine_of_rest, falling, sine_of_rest
+from footcal.leg.fields import DQ_TAU_S, ENC_OFF, ENC_SIGN, HERE, LEAD, STRIBECK, UNSTICK, W_TAU_S
 
 STILL_AFTER_S = 0.05  # a joint not heard for longer is taken to stand still
 
@@ -56,9 +57,13 @@ def read_joints(inp: Any, s: Any) -> None:
 
 
 @inner
-def slope_joints(s: Any, j: int) -> None:
-    """Advance the derivative filter of joint j wherever it was read; uncoupled, see `coupling`."""
-    tau, lead = s.leg_set[DQ_TAU_S], s.leg_set[LEAD]
+def move_joint(s: Any, j: int) -> None:
+    """Advance the derivative of joint j where it was read; sine, cosine, |tanh(speed/stuck speed)| and Stribeck's bump.
+
+    Joints are taken as uncoupled, see `coupling`. One loop for all: a shorter one is unrolled and gives no vector; and
+    what does not move with j is read before the loop, as it would stop the vector too.
+    """
+    tau, lead, unstick = s.leg_set[DQ_TAU_S], s.leg_set[LEAD], s.leg_set[UNSTICK]
     for k in range(s.leg_q.shape[1]):
         gap = s.leg_gap_s[j, k]
         starts = s.leg_starts[j, k]
@@ -80,6 +85,18 @@ def slope_joints(s: Any, j: int) -> None:
         s.leg_q[j, k] = s.leg_phi[j, k]
         s.leg_dq[j, k] = dphi
         s.leg_ddq[j, k] = ddphi
+        turns = np.floor(s.leg_phi[j, k] * TWO_OVER_PI + 0.5)  # quarter turns
+        rest = (s.leg_phi[j, k] - turns * HALF_PI_HIGH) - turns * HALF_PI_LOW
+        sine, cosine = sine_of_rest(rest), cosine_of_rest(rest)
+        half = np.floor(0.5 * turns)
+        odd = turns - 2.0 * half  # 0 or 1
+        sign = 1.0 - 2.0 * (half - 2.0 * np.floor(0.5 * half))
+        s.leg_sin[j, k] = sign * (sine + odd * (cosine - sine))
+        s.leg_cos[j, k] = sign * (cosine - odd * (cosine + sine))
+        e = falling(2.0 * abs(dphi) * unstick)
+        s.leg_grip[j, k] = (1.0 - e) / (1.0 + e)
+        x = dphi * s.leg_drive[STRIBECK, j, k]
+        s.leg_bump[j, k] = falling(x * x)
 
 
 @inner

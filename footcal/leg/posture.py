@@ -17,6 +17,7 @@ from footcal.leg.adopt import adopt
 from footcal.leg.constants import fill_leg_constants, fresh_leg_state
 from footcal.leg.description import Robot
 from footcal.leg.fields import COUPLED, leg_dtypes
+from footcal.leg.motion import move_joint
 from footcal.leg.step import posture
 from footcal.records import FloatArray
 
@@ -56,9 +57,11 @@ def _make(key: int) -> Callable[..., None]:
         adopt(s, c)
         for i in range(q.shape[0]):
             for j in range(q.shape[1]):
-                s.leg_q[j, 0] = q[i, j]
-                s.leg_dq[j, 0] = dq[i, j]
-                s.leg_ddq[j, 0] = ddq[i, j]
+                s.leg_phi[j, 0] = q[i, j]
+                s.leg_dphi[j, 0] = dq[i, j]
+                s.leg_ddphi[j, 0] = ddq[i, j]
+            for j in range(s.leg_q.shape[0]):
+                move_joint(s, j)  # nothing newly read: it takes the motion as it stands
             posture(s)
             for x in range(3):
                 out[i, x] = s.foot_B_m[x, 0]

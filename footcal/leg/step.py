@@ -12,10 +12,9 @@ from footcal.leg.chain import first_joint, foot_and_axis, jacobian, next_joint
 from footcal.leg.compiled import inner
 from footcal.leg.coupling import couple_load, couple_motion, couple_torques
 from footcal.leg.current import drive_torques, load_torque, read_currents, varying_ratio
-from footcal.leg.dynamics import below_sensor, first_link, hand_back, link_wrench, next_link, rigid_torques
-from footcal.leg.elementary import curves
+from footcal.leg.dynamics import below_sensor, first_link, link_wrench, next_link
 from footcal.leg.fields import COUPLED, VARIES
-from footcal.leg.motion import read_base, read_joints, slope_joints
+from footcal.leg.motion import move_joint, read_base, read_joints
 
 
 @inner
@@ -35,7 +34,7 @@ def leg_step(inp: Any, gravity: Any, s: Any, c: Any) -> None:
     read_base(inp, gravity, s)
     read_joints(inp, s)
     for j in range(joints):
-        slope_joints(s, j)
+        move_joint(s, j)
     if s.leg_set[COUPLED] > 0.0:
         couple_motion(s)
     posture(s)
@@ -53,10 +52,8 @@ def leg_step(inp: Any, gravity: Any, s: Any, c: Any) -> None:
 
 @inner
 def posture(s: Any) -> None:
-    """From actuator angles, speeds and accelerations to geometry, rigid-body torques and inertia below the sensor."""
+    """From joint motion, sines and cosines to geometry, rigid-body torques and inertia below the sensor."""
     joints = s.leg_q.shape[0]
-    for j in range(joints):
-        curves(s, j)
     first_joint(s)
     for j in range(1, joints):
         next_joint(s, j)
@@ -66,8 +63,5 @@ def posture(s: Any) -> None:
     for j in range(1, joints):
         next_link(s, j)
     for j in range(joints):
-        link_wrench(s, j)
+        link_wrench(s, joints - 1 - j)
     below_sensor(s)
-    for j in range(joints - 1):
-        hand_back(s, joints - 2 - j)
-    rigid_torques(s)
