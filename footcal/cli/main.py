@@ -59,6 +59,11 @@ def run(arguments: list[str] | None = None) -> None:
     except BrokenPipeError:
         _close_quietly()
         sys.exit(0)
+    except SystemExit as stop:
+        if isinstance(stop.__context__, BrokenPipeError):  # the library under typer has turned it into an exit
+            _close_quietly()
+            sys.exit(0)
+        raise
     except typer.Abort:
         sys.stderr.write("stopped\n")
         sys.exit(130)

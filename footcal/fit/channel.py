@@ -42,17 +42,23 @@ def lone_spikes(raw: FloatArray) -> BoolArray:
     """Mark single samples far from both neighbours while these agree (a flipped bit, a bad frame), shape (n,).
 
     A sample is marked when it differs from both neighbours, to the same side, by more than twelve times the robust
-    noise of the samples around it and by more than five times what its neighbours differ.
+    noise, by more than a count, and by more than five times what the three samples on either side move from one to the
+    next; so the overshoot of a weight set down is none.
     """
     marked = np.zeros(len(raw), dtype=bool)
-    if len(raw) < 5:
+    if len(raw) < 9:
         return marked
-    left, right = raw[1:-1] - raw[:-2], raw[1:-1] - raw[2:]
+    moves = np.diff(raw)
+    left, right = moves[3:-4], -moves[4:-3]  # of samples 4 to n - 5 against their neighbours
     smaller = np.minimum(np.abs(left), np.abs(right))
-    noise = 1.4826 * float(np.median(np.abs(np.diff(raw)))) / np.sqrt(2.0)
-    across = np.abs(raw[2:] - raw[:-2])
-    marked[1:-1] = (left * right > 0.0) & (smaller > 12.0 * max(noise, 1e-12)) & (smaller > 5.0 * across)
-    return marked & (np.concatenate([[0.0], smaller, [0.0]]) > 1.5)  # a step of one count is no spike
+    noise = 1.4826 * float(np.median(np.abs(moves))) / np.sqrt(2.0)
+    sizes = np.abs(moves)
+    before = np.max([sizes[k : k + len(left)] for k in range(3)], axis=0)
+    after = np.max([sizes[k : k + len(left)] for k in range(5, 8)], axis=0)
+    across = np.abs(raw[5:-3] - raw[3:-5])
+    around = np.maximum(np.maximum(before, after), across)
+    marked[4:-4] = (left * right > 0.0) & (smaller > max(12.0 * noise, 1.5)) & (smaller > 5.0 * around)
+    return marked
 
 
 def _smoothed_temperature(t_ns: IntArray, temp_C: FloatArray) -> FloatArray:

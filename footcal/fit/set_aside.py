@@ -15,6 +15,7 @@ from footcal.records import FloatArray, Hold, IntArray
 
 OFF_BY_SD: Final = 5.0
 MOVED_BY_SD: Final = 8.0
+SMALLEST_MOVE_SHARE: Final = 1e-3  # of full scale: no move inside a window below this is a bump
 SMALLEST_SHARE: Final = 2e-4  # of full scale: below this nothing is set aside, however small the scatter
 MOST_SHARE: Final = 0.2  # of all steps; more than this is no longer a few bad steps
 
@@ -66,13 +67,18 @@ def bad_holds(
     """Return the holds whose mean is off by more than 5 robust standard deviations, or that moved inside the window."""
     errors = hold_errors(fitted, rows)
     sd = np.maximum(expected_sd(errors), SMALLEST_SHARE / OFF_BY_SD)
-    usual_spread = max(robust_sd(errors.spread), SMALLEST_SHARE / MOVED_BY_SD)
+    quick = np.array([holds[int(i)].kind == "quick" for i in errors.index])
+    moved_limit = np.empty(len(errors.index))
+    for kind in (quick, ~quick):  # a whisked load rings longer than a settled one
+        if kind.any():
+            moved_limit[kind] = max(MOVED_BY_SD * robust_sd(errors.spread[kind]), SMALLEST_MOVE_SHARE)
+    moved_limit = np.maximum(moved_limit, MOVED_BY_SD * sd)
     found = []
     for k, hold_index in enumerate(int(i) for i in errors.index):
         off_N = float(errors.mean[k]) * capacity_N
         if abs(errors.mean[k]) > OFF_BY_SD * sd[k]:
             found.append(_explained(hold_index, holds[hold_index], off_N, float(sd[k]) * capacity_N, gravity_m_per_s2))
-        elif errors.spread[k] > MOVED_BY_SD * max(usual_spread, float(sd[k])):
+        elif errors.spread[k] > moved_limit[k]:
             moved_N = float(errors.spread[k]) * capacity_N
             found.append(
                 Aside(hold_index, f"the reading moved by {moved_N:.3g} N inside the window (bump or tug)", None)
