@@ -10,7 +10,7 @@ from footcal.fit.outcome import FitResult
 from footcal.report.calibration_pictures import budget_picture, curve_pictures, error_pictures, trust_pictures
 from footcal.report.page import CAUTION, Page, Section, Table, write_page
 from footcal.report.points import HoldPoints, hold_points
-from footcal.report.words import decimals, mean_of, number, percent_FS
+from footcal.report.words import decimals, mean_of, moment, number, percent_FS
 
 KIND_WORDS = {
     "cell": "load cell",
@@ -66,7 +66,7 @@ def calibration_page(result: FitResult) -> Page:
         invented=any("invented" in session.meta.extra for session in result.data.sessions),
         footer=(
             f"Calibration file, SHA-256 {file.sha256}.",
-            f"Made {file.provenance.made_utc} by footcal {file.provenance.tool_version}.",
+            f"Made {moment(file.provenance.made_utc)} by footcal {file.provenance.tool_version}.",
         ),
     )
 
@@ -77,7 +77,7 @@ def _identity(result: FitResult) -> Section:
     mount = f"{file.zero.mount or 'not stated'}, {file.zero.mass_below_sensor_kg:g} kg below the sensor"
     limit_N = file.sensor.safe_limit_N
     rows = tuple(
-        (used.name, used.start_utc or "-", used.operator or "-", f"{used.samples}", f"{used.holds}", used.sha256[:16])
+        (used.name, moment(used.start_utc), used.operator or "–", f"{used.samples}", f"{used.holds}", used.sha256[:16])
         for used in file.provenance.sessions
     )
     return Section(

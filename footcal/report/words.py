@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import math
 
 import numpy as np
@@ -27,3 +28,15 @@ def decimals(full_N: float) -> int:
 def mean_of(values: FloatArray) -> float:
     """Return the mean; NaN of nothing."""
     return float(np.mean(values)) if len(values) else math.nan
+
+
+def moment(iso: str | None) -> str:
+    """Return a time of a calibration file (ISO 8601) as people read it, to the minute, UTC; a dash where there is none.
+
+    Words that are no time come back as they are.
+    """
+    try:
+        found = dt.datetime.fromisoformat(iso or "")
+    except ValueError:
+        return iso or "–"
+    return found.astimezone(dt.UTC).strftime("%Y-%m-%d %H:%M UTC") if found.tzinfo else found.strftime("%Y-%m-%d %H:%M")

@@ -7,7 +7,7 @@ import math
 import numpy as np
 import pytest
 
-from footcal.report.words import decimals, mean_of, number, percent_FS
+from footcal.report.words import decimals, mean_of, moment, number, percent_FS
 
 
 @pytest.mark.parametrize("missing", [None, math.nan, math.inf])
@@ -32,3 +32,10 @@ def test_decimals_show_a_ten_thousandth_of_full_scale(full_N: float, expected: i
 def test_mean_of_nothing_is_nan_without_a_warning() -> None:
     """No values have no mean."""
     assert math.isnan(mean_of(np.zeros(0)))
+
+
+def test_time_is_printed_to_the_minute_in_utc() -> None:
+    """Half past ten in a zone two hours ahead is half past eight UTC (by hand); no time is a dash."""
+    assert moment("2031-03-05T10:30:12+02:00") == "2031-03-05 08:30 UTC"
+    assert moment(None) == "–"
+    assert moment("some day") == "some day"
