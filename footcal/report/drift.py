@@ -40,6 +40,7 @@ def draw_drift(figure: Figure, span_pct: DriftSeries, zero_N: DriftSeries, since
             axes.axvline(_number(since), color=AMBER.colour, linestyle=":", linewidth=1.2, label="since")
         dress(axes, "", label)
     marked = list(span_pct.days)[:: max(1, -(-len(span_pct.days) // 4))]
+    bottom.margins(x=0.08)
     bottom.set_xticks([_number(day) for day in marked], [day.isoformat() for day in marked])
     legend(top, columns=4)
     return figure
