@@ -20,14 +20,14 @@ def register(app: typer.Typer) -> None:
 
 def score(
     estimate: Annotated[Path, typer.Argument(help="Estimate written by footcal fuse.")],
-    truth: Annotated[Path, typer.Argument(help="Truth: t_s, <leg>.fx_N, fy_N, fz_N, optionally <leg>.contact.")],
+    truth: Annotated[Path, typer.Argument(help="Truth: t_s, <leg>.fx_N, fy_N, fz_N, <leg>.contact.")],
     robot: Annotated[Path, typer.Option("--robot", help="Robot description (robot.toml).")],
     log: Annotated[Path | None, typer.Option("--log", help="The log, for its attitude (world axes).")] = None,
     frame: Annotated[str | None, typer.Option("--frame", help="Frame of the truth: body or world.")] = None,
     align: Annotated[bool, typer.Option("--align/--no-align", help="Take the clock offset out.")] = True,
     json: Annotated[bool, typer.Option("--json", help="Print one JSON document.")] = False,
 ) -> None:
-    """Tell how good an estimate is: contact, delays, force, and whether its probabilities and covariances are honest."""
+    """Tell how good an estimate is: contact, delays, force, and whether probabilities and covariances are honest."""
     from footcal.cli.console import print_json, print_table
     from footcal.files.truth import read_truth
     from footcal.fusion.estimate_files import read_estimate
@@ -42,7 +42,9 @@ def score(
         print_json(result.as_dict())
         return
     taken = "taken out" if result.aligned else "kept"
-    title = f"{result.minutes:.2f} min, {result.rows} rows; truth's clock {1e3 * result.clock_offset_s:+.2f} ms, {taken}"
+    title = (
+        f"{result.minutes:.2f} min, {result.rows} rows; truth's clock {1e3 * result.clock_offset_s:+.2f} ms, {taken}"
+    )
     print_table(title, ("contact", "fusion", "15 N threshold"), _contact_rows(result))
     if result.force is not None:
         print_table("Force over true stance", ("force", "fusion"), _force_rows(result.force))
@@ -102,7 +104,10 @@ def _force_rows(force: ForceScore) -> list[tuple[str, str]]:
         ("vector RMSE", f"{force.vector_rmse_N:.2f} N, {force.vector_rmse_pct:.2f} % of body weight"),
         ("vertical bias", f"{force.vertical_bias_N:+.2f} N"),
         ("RMSE in swing", f"{force.swing_rmse_N:.2f} N"),
-        ("NEES in stance: mean, inside 95 % bounds", f"{force.nees_stance_mean:.2f}, {force.nees_stance_inside_pct:.0f} %"),
+        (
+            "NEES in stance: mean, inside 95 % bounds",
+            f"{force.nees_stance_mean:.2f}, {force.nees_stance_inside_pct:.0f} %",
+        ),
         ("NEES in swing: mean, below upper bound", f"{force.nees_swing_mean:.2f}, {force.nees_swing_below_pct:.0f} %"),
         ("2-sigma width in swing", f"{force.swing_width_pct:.2f} % of body weight"),
     ]

@@ -1,4 +1,4 @@
-"""The clock offset between an estimate and its truth, from the sharp parts of the force; and truth on the estimate's times."""
+"""The clock offset between an estimate and its truth, from the slopes of the force; truth on the estimate's times."""
 
 from __future__ import annotations
 

@@ -12,7 +12,7 @@ from footcal.fusion.model_rows import OFF
 
 
 @njit(error_model="numpy")
-def _crossing_ns(p: float, p_before: float, level: float, s: Any) -> int:
+def _crossing_ns(p: float, p_before: float, level: float, s: Any) -> Any:
     """When p went through `level`, by a straight line between the last two samples; this sample where it did not."""
     late = 0.0
     if (p - level) * (p_before - level) < 0.0:
@@ -22,7 +22,7 @@ def _crossing_ns(p: float, p_before: float, level: float, s: Any) -> int:
 
 @njit(error_model="numpy")
 def _known(l: int, s: Any, c: Any) -> bool:
-    """Tell whether foot or torque can decide at all: a usable foot, or motors that see the vertical force well enough."""
+    """Tell whether foot or torque can decide at all: a usable foot, or motors that see the vertical force well."""
     sick = s.fil_health[l] & (STUCK | SATURATED | UNCALIBRATED)
     if not sick and s.fil_mute_s[l] <= c.fil_stale_s[0] + 2.0 * c.fil_period_s[l]:
         return True

@@ -218,6 +218,6 @@ def _calibration_of(robot: Robot, leg: str) -> Calibration | None:
         raise FileFormatError(
             where=str(path),
             what=f"leg {leg!r} wants foot {promised}, the file is of foot {calibration.foot_id}",
-            mend=f"Put the calibration of foot {promised} there, or name the foot that is mounted in {robot.path.name}.",
+            mend=f"Put the calibration of foot {promised} there, or name the mounted foot in {robot.path.name}.",
         )
     return calibration

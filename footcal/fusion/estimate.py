@@ -76,9 +76,7 @@ class EstimateColumns:
         return columns
 
 
-def columns_from_rows(
-    legs: tuple[str, ...], t_s: FloatArray, rows: NDArray[np.void]
-) -> EstimateColumns:
+def columns_from_rows(legs: tuple[str, ...], t_s: FloatArray, rows: NDArray[np.void]) -> EstimateColumns:
     """Return columns from output records of the compiled step.
 
     Args:
@@ -119,8 +117,9 @@ def columns_from_table(legs: tuple[str, ...], table: Mapping[str, FloatArray | I
     """
     parts: dict[str, list[FloatArray | IntArray]] = {}
     for name, (field, _) in LEG_COLUMNS.items():
-        kind = np.int64 if name in WHOLE_NUMBERS else np.float64
-        parts.setdefault(field, []).append(np.stack([table[f"{leg}.{name}"] for leg in legs], axis=1).astype(kind))
+        values = np.stack([table[f"{leg}.{name}"] for leg in legs], axis=1)
+        kept = values.astype(np.int64) if name in WHOLE_NUMBERS else values.astype(np.float64)
+        parts.setdefault(field, []).append(kept)
     arrays: dict[str, Any] = {
         field: stacks[0] if len(stacks) == 1 else np.stack(stacks, axis=2) for field, stacks in parts.items()
     }

@@ -56,7 +56,7 @@ def shared_state_fields(legs: int, joints: int) -> list[Field]:
 
 def filter_state_fields(legs: int, joints: int) -> list[Field]:
     """Return the filter's own state: estimates, mode probabilities, decision memory, health memory, work rows."""
-    f, i = "f8", "i8"
+    f = "f8"
     lanes, n = MODES * legs, state_size(joints)
     pairs = n * (n + 1) // 2
     estimate: list[Field] = [
@@ -155,7 +155,8 @@ def filter_constant_fields(legs: int, joints: int) -> list[Field]:
         "fil_moving_mean_N fil_moving_up_N fil_moving_side_N fil_touch_up_N2 fil_touch_all_N2 fil_lift_reset "
         "fil_cost_per_s fil_cost_N fil_cost_cap fil_peak_tau_s fil_floor fil_e_tau_s fil_e_part fil_e_min_N "
         "fil_read_min_N fil_on_p fil_off_p fil_on_s fil_off_s fil_early_s fil_early_off_s fil_min_N fil_zero_p "
-        "fil_zero_wait_s fil_zero_tau_s fil_zero_max_N fil_zero_N_per_s fil_zero_flag_N fil_known_N fil_start_Nm fil_timing_s fil_timing_tau_s fil_axial_timing_s "
+        "fil_zero_wait_s fil_zero_tau_s fil_zero_max_N fil_zero_N_per_s fil_zero_flag_N fil_known_N fil_start_Nm "
+        "fil_timing_s fil_timing_tau_s fil_axial_timing_s "
         "fil_stuck_s fil_stuck_ratio fil_silent_s fil_stale_s fil_noisy_ratio fil_noisy_tau_s fil_noisy_min_N "
         "fil_disagree_chi2 fil_disagree_s fil_dead_after_s fil_dead_sds"
     )
@@ -171,7 +172,7 @@ def filter_constant_fields(legs: int, joints: int) -> list[Field]:
 
 
 def joined(*parts: list[Field]) -> np.dtype[np.void]:
-    """Return one dtype of all fields, each at the start of a cache line; a field that two parts declare alike stands once.
+    """Return one dtype of all fields, each at the start of a cache line; a field that two parts declare stands once.
 
     Raises:
         TypeError: two parts declare one name with different type or shape.
@@ -194,7 +195,7 @@ def joined(*parts: list[Field]) -> np.dtype[np.void]:
 
 
 def one_record(dtype: np.dtype[np.void]) -> NDArray[np.void]:
-    """Return an array of one zeroed record that begins at a cache line (wide stores across lines cost some 3 times more)."""
+    """Return an array of one zeroed record that begins at a cache line (wide stores across lines cost more)."""
     room = np.zeros(dtype.itemsize + LINE_BYTES, dtype=np.uint8)
     start = -room.ctypes.data % LINE_BYTES
     return room[start : start + dtype.itemsize].view(dtype)

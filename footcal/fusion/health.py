@@ -1,4 +1,4 @@
-"""What is wrong with a foot or a motor: found in the compiled step, answered by the noise of the reading, told as bits."""
+"""What is wrong with a foot or a motor: found in the compiled step, answered by the reading's noise, told as bits."""
 
 from __future__ import annotations
 
@@ -16,7 +16,7 @@ UNCALIBRATED, ZERO_UNCONFIRMED = 1 << 10, 1 << 12
 
 
 @njit(error_model="numpy")
-def _unchanged(raw: float, l: int, s: Any, c: Any) -> bool:
+def _unchanged(raw: float, l: int, s: Any, c: Any) -> Any:
     """Tell whether the raw reading has stood still far longer than it ever does; learns how long it usually does."""
     if not isfinite(raw):
         s.fil_run_s[l] = 0.0
@@ -34,7 +34,7 @@ def _unchanged(raw: float, l: int, s: Any, c: Any) -> bool:
 
 
 @njit(error_model="numpy")
-def _roughness(l: int, s: Any, c: Any) -> bool:
+def _roughness(l: int, s: Any, c: Any) -> Any:
     """Tell whether readings jump about: mean square of second differences (6 times white variance), outliers cut."""
     s.fil_read_gap_s[l] += s.dt_s[0]
     if s.axial_new[l] == 0 or c.fil_period_s[l] > 0.004:
@@ -56,7 +56,7 @@ def _roughness(l: int, s: Any, c: Any) -> bool:
 
 
 @njit(error_model="numpy")
-def _dead_currents(inp: Any, l: int, s: Any, c: Any) -> bool:
+def _dead_currents(inp: Any, l: int, s: Any, c: Any) -> Any:
     """Tell whether a current gives nothing, or exactly zero where the model wants torque; that motor is taken out."""
     found = False
     joints = s.tau_new.shape[0]
@@ -110,7 +110,7 @@ def watch(inp: Any, s: Any, c: Any) -> None:
 
 @njit(error_model="numpy")
 def _observe_zero(l: int, s: Any, c: Any) -> None:
-    """Bounded zero observer: follows the unloaded reading in certain swing only, no faster and no further than allowed."""
+    """Bounded zero observer: follows the unloaded reading in certain swing only, within its rate and its range."""
     certain = s.fil_mu[l] > c.fil_zero_p[0] and s.fil_read_N2[l] < OFF
     if not certain:
         if s.fil_mu[l] <= c.fil_zero_p[0]:
@@ -127,7 +127,7 @@ def _observe_zero(l: int, s: Any, c: Any) -> None:
 
 
 @njit(error_model="numpy")
-def _disagreement(l: int, s: Any, c: Any) -> bool:
+def _disagreement(l: int, s: Any, c: Any) -> Any:
     """Tell whether foot and motors differ by more than friction and the sensor's own error explain, for some time."""
     legs = s.axial_N.shape[0]
     joints = s.tau_new.shape[0]

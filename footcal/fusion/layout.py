@@ -25,6 +25,4 @@ def state_dtype(legs: int, joints: int) -> np.dtype[np.void]:
 @lru_cache(maxsize=32)
 def constant_dtype(legs: int, joints: int) -> np.dtype[np.void]:
     """Return the layout of all constants, of all parts."""
-    return joined(
-        sensor_constant_fields(legs), leg_constant_fields(legs, joints), filter_constant_fields(legs, joints)
-    )
+    return joined(sensor_constant_fields(legs), leg_constant_fields(legs, joints), filter_constant_fields(legs, joints))

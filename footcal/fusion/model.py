@@ -1,4 +1,4 @@
-"""What the fusion believes: its settings, as shares of the robot's weight and rates per second, and the constants they give.
+"""What the fusion believes: its settings, shares of the robot's weight and rates per second, and constants from them.
 
 Shares are of the weight W of the whole robot, rates are per second, so that one table serves any robot and any sample
 rate. The starting values are from a prototype (DESIGN.md §9); each may be set in the `[fusion]` table of robot.toml.
@@ -99,7 +99,16 @@ class FusionSettings:
             raise _bad("off_p", self.off_p, f"below on_p = {self.on_p:g}")
 
 
-_POSITIVE = ("swing_tau_s", "moving_tau_s", "peak_tau_s", "residual_tau_s", "zero_tau_s", "noisy_tau_s", "stance_cost_share", "torque_timing_tau_s")
+_POSITIVE = (
+    "swing_tau_s",
+    "moving_tau_s",
+    "peak_tau_s",
+    "residual_tau_s",
+    "zero_tau_s",
+    "noisy_tau_s",
+    "stance_cost_share",
+    "torque_timing_tau_s",
+)
 _SHARES_OF_ONE = ("touchdown_up_part", "lift_reset", "mode_floor", "residual_part", "on_p", "off_p", "zero_p")
 
 
@@ -130,7 +139,9 @@ def settings_from_table(table: Mapping[str, object], where: str = "robot.toml") 
     return replace(FusionSettings(), **changes)
 
 
-def fill_filter_constants(settings: FusionSettings, weight_N: float, joints_of_leg: tuple[int, ...], c: np.record) -> None:
+def fill_filter_constants(
+    settings: FusionSettings, weight_N: float, joints_of_leg: tuple[int, ...], c: np.record
+) -> None:
     """Write the filter's constants into the one-element constants record.
 
     Args:

@@ -1,4 +1,4 @@
-"""The model of one tick, written into work rows: how each mode carries the state over dt, and what each reading sees."""
+"""The model of one tick, written into work rows: how each mode carries the state on, and what each reading sees."""
 
 from __future__ import annotations
 
@@ -12,7 +12,7 @@ OFF = 1e18  # variance of a reading that says nothing, in N^2 or (N m)^2
 
 @njit(error_model="numpy")
 def upright(inp: Any, gravity: Any, s: Any) -> None:
-    """World vertical in the body frame: third row of R_WB; from `gravity` of a level robot while there is no attitude."""
+    """World vertical in the body frame: third row of R_WB; from `gravity` of a level robot without an attitude."""
     w, x, y, z = inp.quat_WB[0], inp.quat_WB[1], inp.quat_WB[2], inp.quat_WB[3]
     size = w * w + x * x + y * y + z * z
     up = s.fil_up_B
@@ -85,8 +85,8 @@ def _force_rows(s: Any, c: Any) -> None:
 def _timing_rows(s: Any, c: Any) -> None:
     """Process noise of the motor torques: a sharp change of what the model asks for may come some ms early or late.
 
-    Impacts and turning joints change inertia and friction torques within some ms, and the derivative filters behind them
-    know the instant no better; without this term each touchdown leaves a side force that is not there.
+    Impacts and turning joints change inertia and friction torques within some ms, and the derivative filters behind
+    them know the instant no better; without this term each touchdown leaves a side force that is not there.
     """
     dt = s.dt_s[0]
     legs = s.axial_N.shape[0]

@@ -56,7 +56,7 @@ def _check_columns(robot: Robot, path: str | Path, block: RobotLog) -> None:
                 raise FileFormatError(
                     where=f"{path}, column {name!r}",
                     what="the column is missing, or empty in the whole first minute",
-                    mend="Log it, map it in [columns] of the robot description, or take the part out of the description.",
+                    mend="Log it, map it in [columns] of the robot description, or take the part out of it.",
                 )
 
 

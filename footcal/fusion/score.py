@@ -99,7 +99,7 @@ def _rotations(estimate: EstimateColumns, truth: Truth, log: RobotLog | None) ->
 
 def rotations(quat_WB: FloatArray) -> FloatArray:
     """Return R_WB, (n, 3, 3), from quaternions w, x, y, z (n, 4); a row of NaN takes the last one before it."""
-    good = np.isfinite(quat_WB).all(axis=1)
+    good: BoolArray = np.asarray(np.isfinite(quat_WB).all(axis=1))
     last = np.maximum.accumulate(np.where(good, np.arange(len(good)), -1))
     q = quat_WB[np.where(last < 0, int(np.argmax(good)), last)]
     w, x, y, z = (q / np.linalg.norm(q, axis=1, keepdims=True)).T

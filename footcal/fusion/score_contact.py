@@ -1,4 +1,4 @@
-"""Contact against truth: right or wrong, how late, how often falsely, and whether the probability means what it says."""
+"""Contact against truth: right or wrong, how late, how often falsely, and whether the probability is honest."""
 
 from __future__ import annotations
 
@@ -90,7 +90,7 @@ def contact_from_force(t_s: FloatArray, force_N: FloatArray) -> BoolArray:
 
 def _edges(t_s: FloatArray, contact: BoolArray, *, rising: bool) -> FloatArray:
     change = np.diff(contact.astype(np.int8))
-    return t_s[1:][change == (1 if rising else -1)]
+    return np.asarray(t_s[1:][change == (1 if rising else -1)])
 
 
 def _match(true_s: FloatArray, found_s: FloatArray) -> FloatArray:

@@ -14,7 +14,7 @@ from footcal.leg import Robot
 from footcal.records import FloatArray
 from footcal.sensor.creep import CREEP_TAU_S, N_CREEP
 from footcal.sensor.curve import N_POWERS
-from footcal.sensor.hysteresis import N_PLAY, PLAY_HALF_WIDTH
+from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
 from footcal.sensor.model import FEATURES, N_FEATURES, N_UNCERTAINTY_ROWS
 from footcal.sensor.temperature import N_TEMPERATURE
 from footcal.sim.gait import SimulatedRun

@@ -10,10 +10,18 @@ import numpy as np
 from numba import njit
 from numpy.typing import NDArray
 
-from footcal.fusion.fields import filter_constant_fields, filter_state_fields, joined, one_record, out_dtype, shared_state_fields, tick_dtype
+from footcal.fusion.fields import (
+    filter_constant_fields,
+    filter_state_fields,
+    joined,
+    one_record,
+    out_dtype,
+    shared_state_fields,
+    tick_dtype,
+)
 from footcal.fusion.model import FusionSettings, fill_filter_constants
-from footcal.fusion.step import emit, filter_step, fuse, take_time
 from footcal.fusion.model_rows import readings, upright
+from footcal.fusion.step import emit, filter_step, fuse, take_time
 from footcal.sensor.fields import sensor_constant_fields
 
 LEVEL = np.array([0.0, 0.0, -9.81])

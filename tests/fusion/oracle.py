@@ -1,4 +1,4 @@
-"""The same model built plainly with filterpy: one KalmanFilter a mode, joined by its IMMEstimator. One leg, three joints."""
+"""The same model built plainly with filterpy: one KalmanFilter a mode, joined by its IMMEstimator; one leg."""
 
 from __future__ import annotations
 
@@ -26,7 +26,9 @@ class Leg:
     axial_u_N: float
 
 
-def force_model(mode: int, dt_s: float, settings: FusionSettings, weight_N: float) -> tuple[float, FloatArray, FloatArray]:
+def force_model(
+    mode: int, dt_s: float, settings: FusionSettings, weight_N: float
+) -> tuple[float, FloatArray, FloatArray]:
     """Return decay, mean and process noise of the force in one mode (DESIGN.md, section 9)."""
     if mode == 0:
         keep = np.exp(-dt_s / settings.swing_tau_s)

@@ -24,7 +24,9 @@ def press(lone: LoneFilter, force_N: float, rng: np.random.Generator) -> None:
     s["tau_meas_Nm"][:3, 0] = torque[:3] + 0.1 * rng.standard_normal(3)
 
 
-def profile(lone: LoneFilter, force_N: FloatArray, period_ns: int = 1_000_000) -> list[tuple[int, int, int, float, float]]:
+def profile(
+    lone: LoneFilter, force_N: FloatArray, period_ns: int = 1_000_000
+) -> list[tuple[int, int, int, float, float]]:
     """Run a force profile; return (tick, contact, event, t_event_s, p) per tick."""
     rng = np.random.default_rng(7)
     told = []

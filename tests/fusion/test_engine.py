@@ -19,20 +19,24 @@ from tests.fusion.ideal import ideal_calibration, ideal_fusion, log_of, robot_of
 
 @pytest.fixture(scope="module")
 def trot() -> SimulatedRun:
+    """A short trot on ideal feet."""
     return simulate("trot", "belt", 1.5, 3)
 
 
 @pytest.fixture(scope="module")
 def robot(trot: SimulatedRun, tmp_path_factory: pytest.TempPathFactory) -> Robot:
+    """The robot of that trot."""
     return robot_of(trot, tmp_path_factory.mktemp("robot"))
 
 
 @pytest.fixture(scope="module")
 def log(trot: SimulatedRun, robot: Robot) -> RobotLog:
+    """Its log."""
     return log_of(trot.log, robot)
 
 
 def part_of(log: RobotLog, rows: slice) -> RobotLog:
+    """Return some rows of a log."""
     arrays = {
         field.name: getattr(log, field.name)[rows]
         for field in fields(RobotLog)
@@ -42,6 +46,7 @@ def part_of(log: RobotLog, rows: slice) -> RobotLog:
 
 
 def tick_of(log: RobotLog, row: int) -> Tick:
+    """Return one row as a tick."""
     return Tick(
         t_ns=int(log.t_ns[row]),
         raw=log.raw[row],
@@ -147,7 +152,9 @@ def test_a_calibration_of_another_foot_is_refused(robot: Robot) -> None:
     """A file that is named for one foot and holds another is refused, with both serial numbers."""
     folder = robot.path.parent
     for number in (1, 2, 3, 4):
-        ideal_calibration("SIM-0007" if number == 2 else f"SIM-{number:04d}").save(folder / f"SIM-{number:04d}.cal.json")
+        ideal_calibration("SIM-0007" if number == 2 else f"SIM-{number:04d}").save(
+            folder / f"SIM-{number:04d}.cal.json"
+        )
     with pytest.raises(FileFormatError, match=r"SIM-0002.*SIM-0007"):
         load_calibrations(robot)
 

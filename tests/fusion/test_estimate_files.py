@@ -1,4 +1,4 @@
-"""Estimates in files: round trips, null for NaN, names of DESIGN section 4, and files that are not there until whole."""
+"""Estimates in files: round trips, null for NaN, names of DESIGN section 4, files whole or not at all."""
 
 from __future__ import annotations
 
@@ -20,10 +20,11 @@ from footcal.records import FloatArray, IntArray
 NAMES = (
     "p_contact contact contact_known event t_event_s fx_N fy_N fz_N cxx_N2 cxy_N2 cxz_N2 cyy_N2 cyz_N2 czz_N2 "
     "axial_N axial_u_N sensor_bias_N foot_age_s motor_age_s health"
-).split()
+).split()  # noqa: SIM905
 
 
 def some_estimate(rows: int = 7) -> EstimateColumns:
+    """Return two legs of random numbers."""
     rng = np.random.default_rng(7)
 
     def real(*shape: int) -> FloatArray:
@@ -54,6 +55,7 @@ def some_estimate(rows: int = 7) -> EstimateColumns:
 
 
 def assert_same(a: EstimateColumns, b: EstimateColumns) -> None:
+    """Compare every field that files hold."""
     assert a.legs == b.legs
     for field in fields(EstimateColumns):
         if field.name not in {"legs", "nis", "nis_dof"}:
@@ -102,9 +104,14 @@ def test_json_lines_hold_the_same_names_and_null_for_nan() -> None:
 
 def test_a_failing_run_leaves_no_file(tmp_path: Path) -> None:
     """An error between blocks leaves neither file nor temporary neighbour."""
-    with pytest.raises(RuntimeError), estimate_writer(tmp_path / "estimate.parquet", {}) as writer:
-        writer.write(some_estimate())
-        raise RuntimeError
+
+    def fail_half_way() -> None:
+        with estimate_writer(tmp_path / "estimate.parquet", {}) as writer:
+            writer.write(some_estimate())
+            raise RuntimeError
+
+    with pytest.raises(RuntimeError):
+        fail_half_way()
     assert list(tmp_path.iterdir()) == []
 
 

@@ -14,10 +14,19 @@ from tests.fusion.lone import LoneFilter, lone_filter
 from tests.fusion.oracle import Leg, imm, kalman_filter, set_matrices
 
 WEIGHT_N = 176.58
-LINEAR = replace(FusionSettings(), touchdown_sd_share=0.0, lift_reset=0.0, stance_cost=0.0, mode_floor=0.0, torque_timing_s=0.0, axial_timing_s=0.0)
+LINEAR = replace(
+    FusionSettings(),
+    touchdown_sd_share=0.0,
+    lift_reset=0.0,
+    stance_cost=0.0,
+    mode_floor=0.0,
+    torque_timing_s=0.0,
+    axial_timing_s=0.0,
+)
 
 
 def leg_of(lone: LoneFilter) -> Leg:
+    """Return the filter's leg for the oracle."""
     s = lone.s
     return Leg(
         axis_B=s["axis_B"][:, 0].copy(),
@@ -31,6 +40,7 @@ def leg_of(lone: LoneFilter) -> Leg:
 
 
 def unpacked(lone: LoneFilter, lane: int) -> tuple[FloatArray, FloatArray]:
+    """Return state and full covariance of one lane."""
     n = lone.s["fil_x"].shape[0]
     P = np.zeros((n, n))
     P[np.tril_indices(n)] = lone.s["fil_P"][:, lane]
@@ -76,7 +86,7 @@ def test_the_three_mode_filter_equals_filterpys_imm() -> None:
         for mode, kf in enumerate(bank):
             x, P = unpacked(lone, mode)
             assert x == pytest.approx(kf.x[:, 0], abs=1e-9)
-            assert P == pytest.approx(kf.P, abs=1e-9)
+            assert pytest.approx(kf.P, abs=1e-9) == P
         assert lone.s["fil_mu"] == pytest.approx(oracle.mu, abs=1e-9)
         assert lone.s["force_B_N"][:, 0] == pytest.approx(oracle.x[:3, 0], abs=1e-9)
         cov = lone.s["fil_cov_N2"][:, 0]
@@ -109,12 +119,18 @@ def test_one_mode_alone_equals_filterpys_kalman_filter() -> None:
         kf.update(z.reshape(-1, 1))
     x, P = unpacked(lone, 2)
     assert x == pytest.approx(kf.x[:, 0], abs=1e-9)
-    assert P == pytest.approx(kf.P, abs=1e-9)
+    assert pytest.approx(kf.P, abs=1e-9) == P
 
 
 def test_the_settled_covariance_solves_the_riccati_equation() -> None:
     """After long enough the moving mode's prior covariance is the solution of scipy's discrete Riccati solver."""
-    still = replace(LINEAR, moving_to_swing_per_s=0.0, moving_to_quiet_per_s=0.0, swing_to_moving_per_s=0.0, quiet_to_moving_per_s=0.0)
+    still = replace(
+        LINEAR,
+        moving_to_swing_per_s=0.0,
+        moving_to_quiet_per_s=0.0,
+        swing_to_moving_per_s=0.0,
+        quiet_to_moving_per_s=0.0,
+    )
     rng = np.random.default_rng(9)
     lone = lone_filter(still, WEIGHT_N)
     for k in range(4000):

@@ -35,6 +35,7 @@ def hold(lone: LoneFilter, ticks: int, load_N: float, rng: np.random.Generator, 
 
 
 def bits(lone: LoneFilter) -> Health:
+    """Return the health told last."""
     return Health(int(lone.out["health"][0, 0]))
 
 
@@ -51,7 +52,7 @@ def test_the_kernels_upper_bits_are_those_of_the_table(name: str) -> None:
 
 
 def test_a_reading_that_stands_still_is_named_stuck_and_taken_out() -> None:
-    """A raw value that repeats for 200 ms after varying is stuck; a jump of the stuck reading no longer moves the force."""
+    """A raw value that repeats for 200 ms is stuck; then a jump of the reading no longer moves the force."""
     rng = np.random.default_rng(7)
     lone = lone_filter(FusionSettings(), WEIGHT_N)
     hold(lone, 300, 45.0, rng)

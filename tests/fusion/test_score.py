@@ -8,7 +8,7 @@ import pytest
 from footcal.errors import SettingError
 from footcal.files.truth import Truth
 from footcal.fusion.estimate import EstimateColumns
-from footcal.fusion.score import rotations, score
+from footcal.fusion.score import Score, rotations, score
 from footcal.fusion.score_contact import contact_from_force, intervals, poisson_rate
 from footcal.fusion.score_force import nees
 from footcal.records import BoolArray, FloatArray
@@ -51,17 +51,20 @@ def stances(shift: int = 0, rows: int = 6000) -> BoolArray:
 
 
 def vertical(contact: BoolArray, load_N: float = 50.0) -> FloatArray:
+    """Return a vertical load in contact, nothing else."""
     force = np.zeros((len(contact), 3))
     force[:, 2] = load_N * contact
     return force
 
 
 def truth_of(contact: BoolArray, force_N: FloatArray) -> Truth:
+    """Return one leg of truth in the body frame."""
     t_s = np.arange(len(contact)) * 0.001
     return Truth(("leg",), "body", t_s, force_N[:, None, :], contact[:, None].astype(np.float64))
 
 
-def scored(estimate: EstimateColumns, truth: Truth, *, align: bool = False):  # type: ignore[no-untyped-def]  # noqa: ANN201
+def scored(estimate: EstimateColumns, truth: Truth, *, align: bool = False) -> Score:
+    """Score one leg of a robot of 100 N."""
     return score(estimate, truth, Weighing(), align=align)  # type: ignore[arg-type]
 
 
@@ -101,7 +104,7 @@ def test_a_clock_offset_is_found_and_taken_out() -> None:
 
 
 def test_false_and_missed_contacts_are_counted_with_exact_limits() -> None:
-    """One stance dropped, one put where there is none: one of each in 0.1 min; limits 0.0253 and 5.572 (Garwood, table)."""
+    """One stance dropped, one put where there is none: one of each; limits 0.0253 and 5.572 (Garwood, table)."""
     true, found = stances(), stances()
     found[600:800] = False
     found[4400:4410] = True
@@ -151,7 +154,7 @@ def test_nees_uses_the_whole_covariance() -> None:
 
 
 def test_brier_scores_by_hand() -> None:
-    """p = 0.8 in contact and 0.3 out of it: mean of 0.04 (2/5 of samples) and 0.09 = 0.07; every tenth told."""
+    """P = 0.8 in contact and 0.3 out of it: mean of 0.04 (2/5 of samples) and 0.09 = 0.07; every tenth told."""
     contact = np.arange(5000) % 500 < 200
     p = np.where(contact, 0.8, 0.3)
     result = scored(run_of(contact, p, vertical(contact)), truth_of(contact, vertical(contact))).contact
@@ -173,7 +176,9 @@ def test_contact_is_found_in_forces_with_gaps_closed_and_touches_dropped() -> No
 def test_world_truth_without_an_attitude_is_refused() -> None:
     """Forces in the world frame can't be compared unless the log's attitude is given."""
     contact = stances()
-    truth = Truth(("leg",), "world", np.arange(6000) * 0.001, vertical(contact)[:, None], contact[:, None].astype(float))
+    truth = Truth(
+        ("leg",), "world", np.arange(6000) * 0.001, vertical(contact)[:, None], contact[:, None].astype(float)
+    )
     with pytest.raises(SettingError, match="attitude"):
         scored(run_of(contact, contact.astype(float), vertical(contact)), truth)
 
