@@ -7,6 +7,7 @@ Householder QR by LAPACK through scipy.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -80,8 +81,30 @@ def triangle(design: FloatArray, target: FloatArray) -> FloatArray:
     return np.vstack([factor, np.zeros((size - factor.shape[0], size))])
 
 
-def solve_triangles(factors: list[FloatArray]) -> FloatArray:
+def solve_triangles(factors: Sequence[FloatArray]) -> FloatArray:
     """Return the coefficients, shape (k,), that the stacked triangular factors of several groups give together."""
-    stacked = np.asarray(np.linalg.qr(np.vstack(factors), mode="r"))
-    k = stacked.shape[1] - 1
-    return np.asarray(solve_triangular(stacked[:k, :k], stacked[:k, k], check_finite=False))
+    merged = _merged(*factors)
+    k = merged.shape[1] - 1
+    return np.asarray(solve_triangular(merged[:k, :k], merged[:k, k], check_finite=False))
+
+
+def solve_without_each(factors: Sequence[FloatArray], always: FloatArray) -> list[FloatArray]:
+    """Return the coefficients, shape (k,) each, of all groups together less one, for each group in turn.
+
+    Factors are merged once from the front and once from the back, so each answer costs one small factoring more.
+
+    Args:
+        factors: triangular factor of each group, shape (k+1, k+1).
+        always: factor of what stays in every time (priors, ungrouped rows).
+    """
+    front = [always]
+    for factor in factors[:-1]:
+        front.append(_merged(front[-1], factor))
+    back = [np.zeros_like(always)]
+    for factor in reversed(factors[1:]):
+        back.append(_merged(back[-1], factor))
+    return [solve_triangles([before, after]) for before, after in zip(front, reversed(back), strict=True)]
+
+
+def _merged(*factors: FloatArray) -> FloatArray:
+    return np.asarray(np.linalg.qr(np.vstack(factors), mode="r"))

@@ -7,7 +7,7 @@ from typing import Final
 
 import numpy as np
 
-from footcal.fit.least_squares import solve_triangles, triangle
+from footcal.fit.least_squares import solve_without_each, triangle
 from footcal.fit.passes import Fitted
 from footcal.fit.priors import prior_rows
 from footcal.fit.rows import Rows
@@ -55,18 +55,18 @@ def _predict_left_out(
     columns: FloatArray, target: FloatArray, root: FloatArray, groups: IntArray, prior_triangle: FloatArray
 ) -> FloatArray:
     """Refit without each group in turn and predict it; rows of group -1 stay in every fit."""
-    names = np.unique(groups)
-    factors = {
-        int(name): triangle(columns[groups == name] * root[groups == name, None], (target * root)[groups == name])
-        for name in names
-    }
     residual = np.full(len(target), np.nan)
-    left_out_names = [int(name) for name in names if name >= 0]
-    if len(left_out_names) < 2:
+    names = np.unique(groups[groups >= 0])
+    if len(names) < 2:
         return residual
-    for name in left_out_names:
-        others = [factor for key, factor in factors.items() if key != name]
-        coefficients = solve_triangles([*others, prior_triangle])
-        mine = groups == name
+    weighted, weighted_target = columns * root[:, None], target * root
+    members = [np.flatnonzero(groups == name) for name in names]
+    factors = [triangle(weighted[mine], weighted_target[mine]) for mine in members]
+    rest = groups < 0
+    always = triangle(
+        np.vstack([prior_triangle[:, :-1], weighted[rest]]),
+        np.concatenate([prior_triangle[:, -1], weighted_target[rest]]),
+    )
+    for mine, coefficients in zip(members, solve_without_each(factors, always), strict=True):
         residual[mine] = target[mine] - columns[mine] @ coefficients
     return residual

@@ -25,14 +25,15 @@ def play_step(p: float, v: float, h: float) -> float:
 
 
 @njit(error_model="numpy")
-def _play(t_ns: IntArray, v: FloatArray, h: float, gap_ns: int) -> FloatArray:
-    p = np.empty(v.shape[0])
+def _plays(t_ns: IntArray, v: FloatArray, h: FloatArray, gap_ns: int) -> FloatArray:
+    features = np.empty((v.shape[0], h.shape[0]))
+    state = np.empty(h.shape[0])
     for i in range(v.shape[0]):
-        if i == 0 or t_ns[i] - t_ns[i - 1] > gap_ns:
-            p[i] = v[i] + h  # as after a full press and release
-        else:
-            p[i] = play_step(p[i - 1], v[i], h)
-    return p
+        fresh = i == 0 or t_ns[i] - t_ns[i - 1] > gap_ns
+        for k in range(h.shape[0]):
+            state[k] = v[i] + h[k] if fresh else play_step(state[k], v[i], h[k])  # fresh: as after press and release
+            features[i, k] = state[k] - v[i]
+    return features
 
 
 def play_columns(t_ns: IntArray, v: FloatArray) -> FloatArray:
@@ -42,8 +43,7 @@ def play_columns(t_ns: IntArray, v: FloatArray) -> FloatArray:
         t_ns: sample times, shape (n,), nanoseconds, rising; a gap of more than 60 s starts the operators afresh.
         v: apparent force over full scale, creep undone, shape (n,).
     """
-    steady = np.ascontiguousarray(v, dtype=np.float64)
-    return np.column_stack([_play(t_ns, steady, h, SENSOR_GAP_NS) - steady for h in PLAY_HALF_WIDTH])
+    return _plays(t_ns, np.ascontiguousarray(v, dtype=np.float64), np.array(PLAY_HALF_WIDTH), SENSOR_GAP_NS)
 
 
 def prandtl_ishlinskii(

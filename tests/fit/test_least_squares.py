@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from sklearn.linear_model import HuberRegressor, Ridge
 
-from footcal.fit.least_squares import solve, solve_triangles, triangle
+from footcal.fit.least_squares import solve, solve_triangles, solve_without_each, triangle
 from footcal.fit.robust import HUBER_K, huber_weights, robust_sd
 
 
@@ -26,6 +26,21 @@ def test_leaving_a_group_out_by_factors_equals_refitting_without_it() -> None:
     rest = np.r_[0:20, 40:60]
     plain = np.linalg.lstsq(design[rest], target[rest], rcond=None)[0]
     assert merged == pytest.approx(plain, rel=1e-11)
+
+
+def test_leaving_each_group_out_in_turn_equals_refitting_each_time() -> None:
+    """Merging from both ends against a plain fit of the remaining rows, priors kept in."""
+    design, target = data()
+    prior = 0.5 * np.eye(4)
+    groups = [slice(0, 10), slice(10, 30), slice(30, 60)]
+    factors = [triangle(design[group], target[group]) for group in groups]
+    found = solve_without_each(factors, triangle(prior, np.zeros(4)))
+    for group, coefficients in zip(groups, found, strict=True):
+        keep = np.ones(60, dtype=bool)
+        keep[group] = False
+        rows = np.vstack([design[keep], prior])
+        plain = np.linalg.lstsq(rows, np.concatenate([target[keep], np.zeros(4)]), rcond=None)[0]
+        assert coefficients == pytest.approx(plain, rel=1e-11)
 
 
 def test_prior_rows_are_ridge_regression() -> None:
