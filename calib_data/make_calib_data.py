@@ -17,9 +17,9 @@ import pyarrow as pa
 import pyarrow.parquet as pq
 
 from footcal.calfile import Calibration
-from footcal.demo.feet import BENCH_DAY, FEET, DemoFoot, DISTAL_kg, mounted
+from footcal.demo.feet import BENCH_DAY, FEET, DemoFoot, DISTAL_kg, mounted, sessions_of
 from footcal.files.atomic import replacing
-from footcal.files.session import Session, read_session, session_from_tables, write_session
+from footcal.files.session import Session, session_from_tables, write_session
 from footcal.files.session_meta import meta_from_mapping
 from footcal.fit.engine import fit_sessions
 from footcal.sim.bench import SimulatedSession, run_session
@@ -41,6 +41,8 @@ def main() -> None:
     calibrations = {}
     for foot in FEET:
         write_session(bench(foot), HERE / foot.foot_id / "session", ".csv.gz")
+        if foot.sensor().sheet.transducer != "cell":
+            write_session(pumping(foot), HERE / foot.foot_id / "pump", ".csv.gz")
         for week in range(1, foot.weeks + 1):
             write_session(check(foot, week), HERE / foot.foot_id / "checks" / f"week_{week:02d}", ".csv.gz")
         calibrations[foot.foot_id] = calibrated(foot)
@@ -61,6 +63,20 @@ def bench(foot: DemoFoot) -> Session:
         rate_Hz=SESSION_RATE_Hz["cell" if sensor.sheet.transducer == "cell" else "pad"],
         cycles=2,
         start_utc=BENCH_DAY.isoformat(),
+    )
+    return as_session(made)
+
+
+def pumping(foot: DemoFoot) -> Session:
+    """Return a pad's pumping by hand on a reference cell, with the knocks that join the two clocks."""
+    made = run_session(
+        foot.sensor(),
+        np.random.default_rng([foot.seed, 3]),
+        foot_id=foot.foot_id,
+        parts=("pump",),
+        mount="foot_up",
+        mass_below_sensor_kg=DISTAL_kg,
+        start_utc=(BENCH_DAY + dt.timedelta(hours=3)).isoformat(),
     )
     return as_session(made)
 
@@ -89,7 +105,7 @@ def as_session(made: SimulatedSession) -> Session:
 
 def calibrated(foot: DemoFoot) -> Calibration:
     """Return the calibration of the committed session, its date that of the session so that reruns are equal."""
-    result = fit_sessions([read_session(HERE / foot.foot_id / "session")])
+    result = fit_sessions(sessions_of(foot, HERE))
     content: dict[str, Any] = result.calibration.file.model_dump(mode="json", exclude={"sha256"})
     content["provenance"]["made_utc"] = BENCH_DAY.isoformat()
     content["notes"].append(NOTE)

@@ -32,7 +32,7 @@ def converted(calibration: Calibration, trial: SimulatedTrial) -> tuple[FloatArr
     start = trial.t_s < 0.9 * REST_s
     compensator = calibration.compensator()
     try:
-        tare = find_tare(calibration, t_ns[start], trial.raw[start], trial.temp_C[start], "trial")
+        tare = find_tare(calibration, t_ns[start], trial.raw[start], trial.temp_C[start], "trial", rest_N=0.0)
         compensator.tare_raw = tare.raw
     except SettingError:
         pass  # the dead band of a divider pad: used as it is, as the product says

@@ -25,12 +25,18 @@ class Tare:
     shift_N: float  # force that the unloaded foot read before
 
 
-def find_tare(calibration: Calibration, t_ns: IntArray, raw: FloatArray, temp_C: FloatArray, where: str) -> Tare:
+def find_tare(
+    calibration: Calibration,
+    t_ns: IntArray,
+    raw: FloatArray,
+    temp_C: FloatArray,
+    where: str,
+    rest_N: float | None = None,
+) -> Tare:
     """Return the shift for which the mean force over an unloaded stretch is that of the hanging foot.
 
     The shift is sought in raw counts with the loop and creep state as they are, so that what a pad still reads after
-    unloading is not tared in. The target is zero, or minus the weight below the sensor where the calibration states its
-    zero for a massless foot.
+    unloading is not tared in.
 
     Args:
         calibration: of this foot.
@@ -38,6 +44,8 @@ def find_tare(calibration: Calibration, t_ns: IntArray, raw: FloatArray, temp_C:
         raw: readings, shape (n,), counts.
         temp_C: shape (n,); NaN where there is no thermometer.
         where: what to call the stretch in an error.
+        rest_N: axial force on the unloaded foot; None for a foot that hangs: zero, or minus the weight below the sensor
+            where the calibration states its zero for a massless foot.
 
     Raises:
         SettingError: no reading in the stretch, the foot looks loaded or moving, or the curve is flat at zero.
@@ -45,8 +53,7 @@ def find_tare(calibration: Calibration, t_ns: IntArray, raw: FloatArray, temp_C:
     known = np.isfinite(raw)
     if known.sum() < 3:
         raise SettingError(where, "there are fewer than 3 readings to tare on", "Give a longer stretch with --tare.")
-    zero = calibration.file.zero
-    target_N = -zero.mass_below_sensor_kg * STANDARD_GRAVITY_m_per_s2 if zero.stated_for == "massless foot" else 0.0
+    target_N = _hanging_N(calibration) if rest_N is None else rest_N
     shift, first_N = 0.0, float("nan")
     for _ in range(ROUNDS):
         compensator = calibration.compensator()
@@ -65,6 +72,11 @@ def find_tare(calibration: Calibration, t_ns: IntArray, raw: FloatArray, temp_C:
             )
         shift += off_N / slope
     return Tare(shift, first_N)
+
+
+def _hanging_N(calibration: Calibration) -> float:
+    zero = calibration.file.zero
+    return -zero.mass_below_sensor_kg * STANDARD_GRAVITY_m_per_s2 if zero.stated_for == "massless foot" else 0.0
 
 
 def _refuse_loaded(calibration: Calibration, off_N: float, force_N: FloatArray, where: str) -> None:

@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import datetime as dt
 from dataclasses import dataclass
+from pathlib import Path
 from typing import Final
 
 import numpy as np
 
+from footcal.files.session import Session, read_session
 from footcal.sim.sensor_chain import SimulatedSensor
 from footcal.sim.sensors import draw_sensor
 
@@ -37,11 +39,17 @@ class DemoFoot:
 
 
 FEET: Final = (
-    DemoFoot("LC-0417", "front_left", "B", 41_700, weeks=10),
+    DemoFoot("LC-0417", "front_left", "B", 41_700, weeks=10, goes_bad=True),
     DemoFoot("LC-0388", "front_right", "C", 38_800, weeks=0),
-    DemoFoot("SP-0032", "rear_left", "P", 3_201, weeks=10, goes_bad=True),
+    DemoFoot("SP-0032", "rear_left", "P", 3_201, weeks=10),
     DemoFoot("SP-0071", "rear_right", "Q", 7_101, weeks=0),
 )
+
+
+def sessions_of(foot: DemoFoot, data: Path) -> list[Session]:
+    """Return a foot's bench session and, for a pad, the pumping on a reference cell that goes with it."""
+    folders = [data / foot.foot_id / part for part in ("session", "pump")]
+    return [read_session(folder) for folder in folders if folder.is_dir()]
 
 
 def mounted() -> dict[str, str]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, Final
@@ -9,14 +10,18 @@ from typing import Any, Final
 import numpy as np
 
 from footcal.calfile import Calibration
-from footcal.demo.feet import DemoFoot
-from footcal.files.session import read_session
+from footcal.calfile.tare import find_tare
+from footcal.demo.feet import DemoFoot, sessions_of
+from footcal.errors import SettingError
 from footcal.fit.engine import fit_sessions
 from footcal.fit.outcome import FitResult
+from footcal.records import NS_PER_S
+from footcal.sensor.compensator import ForceColumns
 from footcal.sim.trials import SimulatedTrial, stance_trial, static_trial
 
 TRIAL_SEED: Final = 909
 STANCE_s: Final = 20.0
+TARE_s: Final = 4.0  # the trials start with five seconds unloaded
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -32,8 +37,11 @@ class TriedFoot:
 
 
 def try_foot(foot: DemoFoot, data: Path) -> TriedFoot:
-    """Calibrate a foot from its session folder and try it."""
-    result = fit_sessions([read_session(data / foot.foot_id / "session")])
+    """Calibrate a foot from its sessions and try it, tared on the unloaded start of each trial as a user would.
+
+    The trials know no foot below the sensor, so their rest is zero.
+    """
+    result = fit_sessions(sessions_of(foot, data))
     calibration = dated(result)
     sensor = foot.sensor().day(np.random.default_rng([foot.seed, TRIAL_SEED]))
     static = static_trial(sensor, np.random.default_rng([foot.seed, TRIAL_SEED, 1]))
@@ -52,9 +60,20 @@ def dated(result: FitResult) -> Calibration:
     return Calibration.from_content(content)
 
 
+def _tared(calibration: Calibration, trial: SimulatedTrial) -> ForceColumns:
+    """Convert a trial with its unloaded start as zero; a pad that is flat at zero refuses that and goes without."""
+    t_ns = np.rint(trial.t_s * NS_PER_S).astype(np.int64)
+    start = trial.t_s < TARE_s
+    compensator = calibration.compensator()
+    with suppress(SettingError):
+        tare = find_tare(calibration, t_ns[start], trial.raw[start], trial.temp_C[start], "trial", rest_N=0.0)
+        compensator.tare_raw = tare.raw
+    return compensator.run(t_ns, trial.raw, trial.temp_C)
+
+
 def _errors(calibration: Calibration, trial: SimulatedTrial) -> tuple[float, float]:
     """Return the RMS error in per cent of full scale, and how many per cent of the samples lie inside ±2u."""
-    columns = calibration.force(trial.t_s, trial.raw, trial.temp_C)
+    columns = _tared(calibration, trial)
     scored = trial.scored > 0.0
     error_N = (columns.force_N - trial.force_N)[scored]
     inside = np.abs(error_N) <= 2.0 * columns.u_N[scored]

@@ -36,10 +36,10 @@ class Candidate:
     left_out: LeftOut
 
     def error_against(self, reference: Candidate) -> float:
-        """Return the left-out errors over those of another candidate: root mean square over the three leave-outs."""
+        """Return the left-out errors over those of another candidate: root mean square over the leave-outs."""
         ratios = [
             (mine / max(theirs, 1e-9)) ** 2
-            for mine, theirs in zip(self.left_out.rms_percent(), reference.left_out.rms_percent(), strict=True)
+            for mine, theirs in zip(self.left_out.all_percent(), reference.left_out.all_percent(), strict=True)
             if mine is not None and theirs is not None
         ]
         return float(np.sqrt(np.mean(ratios))) if ratios else 1.0

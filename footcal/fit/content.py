@@ -39,7 +39,7 @@ def calibration_content(outcome: FitOutcome) -> dict[str, Any]:
             "safe_limit_N": data.sessions[0].meta.safe_limit_N,
         },
         "provenance": {"made_utc": now, "tool_version": __version__, "sessions": _sessions(data)},
-        "input": _input(data, best),
+        "input": _input(data, best, outcome.lag_s),
         "model": _model(data, best, covariance),
         "unload": {"share_of_peak": unload_share(best, rows, data), "decay_s": UNLOAD_DECAY_S},
         "zero": _zero(data),
@@ -115,7 +115,7 @@ def uncertainty_curve(
     return points
 
 
-def _input(data: FitInput, best: Candidate) -> dict[str, Any]:
+def _input(data: FitInput, best: Candidate, lag_s: float) -> dict[str, Any]:
     return {
         "wiring": data.form.wiring,
         "raw_min": data.form.raw_min,
@@ -126,7 +126,7 @@ def _input(data: FitInput, best: Candidate) -> dict[str, Any]:
         "power_offset": POWER_OFFSET,
         "temp_ref_C": data.temp_ref_C,
         "thermometer_lag_s": THERMOMETER_LAG_S,
-        "lag_s": data.lag_s,
+        "lag_s": lag_s,
     }
 
 

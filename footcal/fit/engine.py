@@ -15,6 +15,7 @@ from footcal.files.session import Session
 from footcal.fit.choose import Candidate, choose_terms
 from footcal.fit.content import calibration_content
 from footcal.fit.inputs import FitInput, read_input
+from footcal.fit.lag_choice import lag_to_undo_s
 from footcal.fit.leave_out import leave_out
 from footcal.fit.outcome import FitOutcome, FitResult
 from footcal.fit.passes import Fitted, fit_terms
@@ -80,8 +81,9 @@ def _fitted(data: FitInput, on_try: Callable[[Terms], None]) -> FitResult:
         temperature_known=best.fitted.terms.temperature,
         reference_relative=data.place.gravity_u_m_per_s2 / data.place.gravity_m_per_s2,
     )
-    notes = tuple(_notes(data, best, aligned))
-    outcome = FitOutcome(data, best, rows, tuple(asides), aligned, uncertainty, covariance, notes)
+    lag_s = lag_to_undo_s(data.lag_s, data.channel, best.fitted, rows)
+    notes = tuple(_notes(data, best, aligned, lag_s))
+    outcome = FitOutcome(data, best, rows, tuple(asides), aligned, uncertainty, covariance, notes, lag_s)
     return FitResult(outcome, Calibration.from_content(calibration_content(outcome)))
 
 
@@ -148,7 +150,7 @@ def _looked_at_again(
     return Candidate(fitted, leave_out(fitted, together)), together, [*asides, *more]
 
 
-def _notes(data: FitInput, best: Candidate, aligned: Aligned | None) -> list[str]:
+def _notes(data: FitInput, best: Candidate, aligned: Aligned | None, lag_s: float) -> list[str]:
     """Say what the sessions could not tell, and what was assumed."""
     notes = list(data.assumed)
     if not any(hold.direction == "zero" for hold in data.holds):
@@ -162,6 +164,9 @@ def _notes(data: FitInput, best: Candidate, aligned: Aligned | None) -> list[str
     dwell_s = max(hold.t_end_s - hold.t_load_s for hold in data.holds)
     if best.fitted.terms.creep and dwell_s < 60.0:
         notes.append(f"longest dwell {dwell_s:.0f} s: creep over minutes is extrapolated by the smooth spectrum")
+    if lag_s < data.lag_s:
+        left_ms = 1e3 * (data.lag_s - lag_s)
+        notes.append(f"{left_ms:.2f} ms of the sensor's lag stay in: undoing them would add more noise than they cost")
     if data.channel.spikes_s:
         notes.append(f"{len(data.channel.spikes_s)} lone spikes in the readings were taken out")
     return notes

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -61,17 +62,25 @@ def holds_of(session: Session, place: BenchPlace, least_loads: int = 2) -> list[
     Raises:
         SessionError: too few different loads.
     """
-    where = f"{session.folder}/steps.csv"
     rows = session.steps[~session.steps["kind"].isin(["pump", "knock"])]
     holds = [_hold(row, place) for _, row in rows.iterrows()]
+    check_loads(holds, session.name, least_loads)
+    return holds
+
+
+def check_loads(holds: Sequence[Hold], name: str, least_loads: int = 2) -> None:
+    """Refuse holds with too few different loads.
+
+    Raises:
+        SessionError: names what a good session has.
+    """
     loads = {round(hold.load_N, 2) for hold in holds if hold.direction != "zero"}
     if len(loads) < least_loads:
         raise SessionError(
-            where,
+            f"{name}, steps",
             f"{len(loads) or 'no'} load only; a curve needs at least two, a good session five (cells) or eight (pads)",
             "Run a session with more loads.",
         )
-    return holds
 
 
 def _hold(values: pd.Series, place: BenchPlace) -> Hold:

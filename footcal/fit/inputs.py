@@ -10,7 +10,7 @@ import numpy as np
 from footcal.errors import SessionError, SettingError
 from footcal.files.session import Session
 from footcal.fit.channel import Channel, join
-from footcal.fit.holds import BenchPlace, bench_place, holds_of
+from footcal.fit.holds import BenchPlace, bench_place, check_loads, holds_of
 from footcal.fit.passes import Reading
 from footcal.fit.reading import RawForm, first_press, raw_form, reading_of, temperature_levels
 from footcal.fit.rows import LEVEL_SHARE, Rows, hold_rows
@@ -56,9 +56,10 @@ def read_input(
     places = [bench_place(session.meta) for session in sessions]
     holds, session_of = [], []
     for number, (session, place) in enumerate(zip(sessions, places, strict=True)):
-        found = holds_of(session, place)
+        found = holds_of(session, place, least_loads=0)
         holds += found
         session_of += [number] * len(found)
+    check_loads(holds, sessions[0].name)
     rows = hold_rows(channel, holds, np.array(session_of), full_scale_N)
     stated_max = raw_max if raw_max is not None else sessions[0].meta.raw_max
     form = raw_form(kind, channel.raw, first_press(channel, rows), stated_max)

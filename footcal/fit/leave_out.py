@@ -20,14 +20,18 @@ TRIM: Final = 0.02  # this share of the largest residuals does not count; fixed,
 class LeftOut:
     """Residuals of each row predicted by a fit that did not see its group; NaN where it belongs to none."""
 
-    cycles: FloatArray  # (rows,)
-    loads: FloatArray
+    cycles: FloatArray  # (rows,) settled holds, their cycle left out
+    quick: FloatArray  # whisked loads, all of them left out together with their cycle
+    loads: FloatArray  # settled holds, their load level left out
     pump: FloatArray
 
     def rms_percent(self) -> tuple[float | None, float | None, float | None]:
         """Trimmed RMS in per cent of full scale: cycles, loads, pump; None where nothing was left out."""
-        first, second, third = (trimmed_rms(values) for values in (self.cycles, self.loads, self.pump))
-        return first, second, third
+        return trimmed_rms(self.cycles), trimmed_rms(self.loads), trimmed_rms(self.pump)
+
+    def all_percent(self) -> tuple[float | None, ...]:
+        """Trimmed RMS as above, whisked loads apart: a weight still swinging must not drown what settled holds say."""
+        return (*self.rms_percent(), trimmed_rms(self.quick))
 
 
 def trimmed_rms(residual: FloatArray) -> float | None:
@@ -46,9 +50,17 @@ def leave_out(fitted: Fitted, rows: Rows) -> LeftOut:
     root = np.sqrt(rows.weight * fitted.row_weight)
     prior = prior_rows(active, fitted.creep_rms)
     prior_triangle = triangle(prior, np.zeros(len(prior)))
-    groupings = (rows.cycle, rows.level, rows.block)
-    residuals = (_predict_left_out(columns, rows.target, root, groups, prior_triangle) for groups in groupings)
-    return LeftOut(*residuals)
+    cycles, loads, pump = (
+        _predict_left_out(columns, rows.target, root, groups, prior_triangle)
+        for groups in (rows.cycle, rows.level, rows.block)
+    )
+    settled = rows.quick == 0
+    return LeftOut(
+        cycles=np.where(settled, cycles, np.nan),
+        quick=np.where(settled, np.nan, cycles),
+        loads=np.where(settled, loads, np.nan),
+        pump=pump,
+    )
 
 
 def _predict_left_out(

@@ -26,6 +26,7 @@ class FitOutcome:
     uncertainty: RuntimeUncertainty
     covariance: FloatArray  # (32, 32) of the coefficients
     notes: tuple[str, ...]
+    lag_s: float  # of the stated lag, what the compensator undoes
 
     @property
     def dynamic(self) -> bool:

@@ -31,6 +31,7 @@ class Rows:
     cycle: IntArray  # group of cycles, -1 where none
     level: IntArray  # group of load levels, -1 where it is not left out (zero, the top load, pump)
     block: IntArray  # group of pump blocks, -1 for holds
+    quick: IntArray  # 1 for loads whisked on or off
 
     @property
     def pump(self) -> BoolArray:
@@ -78,6 +79,7 @@ def hold_rows(channel: Channel, holds: list[Hold], session_of: IntArray, capacit
         cycle=_cycle_groups(channel, holds, session_of)[hold_index],
         level=_level_groups(holds, capacity_N)[hold_index],
         block=np.full(len(start), -1),
+        quick=np.array([int(holds[i].kind == "quick") for i in hold_index]),
     )
 
 
@@ -145,10 +147,9 @@ def pump_rows(channel: Channel, windows_s: list[tuple[float, float]], ref_N: Flo
     start, stop, block = start[keep], stop[keep], block[keep]
     if len(start) == 0:
         none = np.zeros(0, dtype=np.int64)
-        return Rows(none, none, np.zeros(0), np.zeros(0), none, none, none, none)
+        return Rows(none, none, np.zeros(0), np.zeros(0), none, none, none, none, none)
     span_s = float(np.sum(t_s[stop - 1] - t_s[start])) + PUMP_ROW_S * len(start)
     weight = np.full(len(start), PUMP_WEIGHT_PER_S * min(span_s, PUMP_ROW_S * len(start)) / len(start))
     minus = np.full(len(start), -1)
-    return Rows(
-        start, stop, (sums[stop] - sums[start]) / (stop - start) / capacity_N, weight, minus, minus, minus, block
-    )
+    target = (sums[stop] - sums[start]) / (stop - start) / capacity_N
+    return Rows(start, stop, target, weight, minus, minus, minus, block, np.zeros(len(start), dtype=np.int64))

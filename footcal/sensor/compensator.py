@@ -58,7 +58,7 @@ _run = _make_run(source_key("footcal.sensor"))
 
 
 class Compensator:
-    """Turns the readings of one foot into force with its standard uncertainty; remembers creep and loop between calls."""
+    """Turns the readings of one foot into force with its uncertainty; remembers creep and loop between calls."""
 
     def __init__(self, model: SensorModel) -> None:
         self._state: NDArray[np.void] = np.zeros(1, dtype=STATE_DTYPE)
