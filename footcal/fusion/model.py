@@ -47,7 +47,7 @@ class FusionSettings:
     mode_floor: float = 1e-7
     # the foot reading
     residual_tau_s: float = 0.25
-    residual_part: float = 0.7  # of the calibration's variance that is slow (state e), the rest is white
+    residual_part: float = 0.95  # of the variance beyond the converter's noise: slow (state e), the rest is white
     residual_min_share: float = 0.001
     reading_min_share: float = 0.002  # white noise is never taken as smaller
     # torques: what inertia and friction ask for is known no better than its timing

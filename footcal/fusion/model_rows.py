@@ -38,7 +38,8 @@ def readings(s: Any, c: Any) -> None:
         s.fil_shake_N[l] = max(fade * s.fil_shake_N[l], rate * abs(s.axial_inertia_N[l] - s.fil_inertia_N[l]))
         s.fil_inertia_N[l] = s.axial_inertia_N[l]
         u = s.axial_u_N[l]
-        slow = c.fil_e_part[0] * u * u
+        noise_N2 = min(c.sen_u_noise_N[l] ** 2, u * u)  # white; the rest of the calibration's variance is mostly slow
+        slow = c.fil_e_part[0] * (u * u - noise_N2)
         unloaded = c.sen_unload_share[l] * s.fil_peak_N[l]
         s.fil_e_sd_N[l] = c.fil_e_min_N[0]
         s.fil_read_N[l] = 0.0

@@ -22,27 +22,35 @@ from footcal.fusion.fields import (
 from footcal.fusion.model import FusionSettings, fill_filter_constants
 from footcal.fusion.model_rows import readings, upright
 from footcal.fusion.step import emit, filter_step, fuse, take_time
+from footcal.sensor.cachekey import source_key
 from footcal.sensor.fields import sensor_constant_fields
 
 LEVEL = np.array([0.0, 0.0, -9.81])
 
 
-@njit(error_model="numpy")
-def _linear(inp: Any, gravity: Any, S: Any, C: Any) -> None:
-    s, c = S[0], C[0]
-    if take_time(inp[0].t_ns, s):
-        upright(inp[0], gravity, s)
-        readings(s, c)
-        filter_step(s, c)
+def _make(key: int) -> tuple[Any, Any]:
+    """Compile both entries, kept on disk under a number that changes with the sources."""
+
+    @njit(cache=True, error_model="numpy")
+    def linear(inp: Any, gravity: Any, S: Any, C: Any) -> None:
+        s, c = S[0], C[0]
+        if key != 0 and take_time(inp[0].t_ns, s):
+            upright(inp[0], gravity, s)
+            readings(s, c)
+            filter_step(s, c)
+
+    @njit(cache=True, error_model="numpy")
+    def whole(inp: Any, gravity: Any, S: Any, C: Any, out: Any) -> None:
+        s, c = S[0], C[0]
+        if key != 0 and take_time(inp[0].t_ns, s):
+            upright(inp[0], gravity, s)
+            fuse(inp[0], s, c)
+            emit(s, out[0])
+
+    return linear, whole
 
 
-@njit(error_model="numpy")
-def _whole(inp: Any, gravity: Any, S: Any, C: Any, out: Any) -> None:
-    s, c = S[0], C[0]
-    if take_time(inp[0].t_ns, s):
-        upright(inp[0], gravity, s)
-        fuse(inp[0], s, c)
-        emit(s, out[0])
+_linear, _whole = _make(source_key("footcal.fusion", "footcal.sensor"))
 
 
 @lru_cache(maxsize=8)

@@ -24,6 +24,7 @@ class Leg:
     fric_tau_s: float
     tau_noise_Nm: float
     axial_u_N: float
+    axial_noise_N: float
 
 
 def force_model(
@@ -44,7 +45,8 @@ def force_model(
 
 def residual_sd_N(leg: Leg, settings: FusionSettings, weight_N: float) -> float:
     """Return the standard deviation of the slow part of the sensor's error."""
-    return float(np.sqrt(settings.residual_part * leg.axial_u_N**2 + (settings.residual_min_share * weight_N) ** 2))
+    slow = settings.residual_part * (leg.axial_u_N**2 - leg.axial_noise_N**2)
+    return float(np.sqrt(slow + (settings.residual_min_share * weight_N) ** 2))
 
 
 def set_matrices(
@@ -65,7 +67,8 @@ def set_matrices(
     F[-1, -1], Q[-1, -1] = keep_e, residual_sd_N(leg, settings, weight_N) ** 2 * (1 - keep_e**2)
     H = np.zeros((1 + J, n))
     H[0, :3], H[0, -1], H[1:, m] = leg.axis_B, 1.0, np.eye(J)
-    white = (1 - settings.residual_part) * leg.axial_u_N**2 + (settings.reading_min_share * weight_N) ** 2
+    slow = settings.residual_part * (leg.axial_u_N**2 - leg.axial_noise_N**2)
+    white = leg.axial_u_N**2 - slow + (settings.reading_min_share * weight_N) ** 2
     kf.F, kf.Q, kf.B, kf.H = F, Q, B, H
     kf.R = np.diag([white] + [leg.tau_noise_Nm**2] * J)
 

@@ -36,6 +36,7 @@ def leg_of(lone: LoneFilter) -> Leg:
         fric_tau_s=0.08,
         tau_noise_Nm=0.15,
         axial_u_N=0.8,
+        axial_noise_N=0.3,
     )
 
 
