@@ -131,7 +131,7 @@ _Decision = tuple[str, str, str]  # verdict, reason, and what it rests on: zero,
 def _decide(checks: Sequence[StoredCheck], trend: Trend, when: Due, p_zero: float, p_span: float) -> _Decision:
     zero = f"zero has moved by {trend.zero_N:+.3g} N, {trend.limits[0]:.3g} N are allowed"
     span = f"span has changed by {trend.span_pct:+.2f} %, {trend.limits[1]:.3g} % are allowed"
-    repeat = "; the last check alone says so, repeat it first" if trend.jumped else ""
+    repeat = "; the last check alone says so, repeat it first" if trend.jumped and not _outside_before(checks) else ""
     maybe = ", and with its uncertainty it may be outside already ({:.0f} %)"
     zero_drift, span_drift = _drifting(trend, when)
     tests = (
@@ -145,6 +145,12 @@ def _decide(checks: Sequence[StoredCheck], trend: Trend, when: Due, p_zero: floa
     inside = f"zero {trend.zero_N:+.3g} N and span {trend.span_pct:+.2f} % are inside their limits"
     failed = [decision for found, *decision in tests if found] or [[FIT, inside, ""]]
     return _worn(checks, trend) or (str(failed[0][0]), str(failed[0][1]), str(failed[0][2]))
+
+
+def _outside_before(checks: Sequence[StoredCheck]) -> bool:
+    """Return whether the check before the last one already read outside a limit."""
+    before = checks[-2:-1]
+    return any(abs(one.span_pct) > one.limit_span_pct or abs(one.zero_N) > one.limit_zero_N for one in before)
 
 
 def _drifting(trend: Trend, when: Due) -> tuple[bool, bool]:
