@@ -199,7 +199,6 @@ def _sensor_model(file: CalibrationFile) -> SensorModel:
             noise_interval_s=runtime.noise_interval_s,
             temp_C=runtime.temp_C,
             temp_absent_C=runtime.temp_absent_C,
-            start=runtime.start,
             beyond=runtime.beyond,
         ),
     )

@@ -171,7 +171,6 @@ class Runtime(Part):
     noise_interval_s: NotNegative
     temp_C: NotNegative
     temp_absent_C: NotNegative
-    start: NotNegative
     beyond: NotNegative
 
 

@@ -22,6 +22,7 @@ from footcal.sensor.transform import POWER_OFFSET
 
 CROSS_AXIS_DEFAULT: Final = {"cell": 0.01, "resistive": 0.03, "magnetic": 0.03, "capacitive": 0.03}
 UNLOAD_DECAY_S: Final = 6.0
+FORGOTTEN: Final = 0.01  # of full scale: below this the state at power-up no longer matters
 
 
 def calibration_content(outcome: FitOutcome) -> dict[str, Any]:
@@ -79,7 +80,6 @@ _RUNTIME: Final = (
     "noise_interval_s",
     "temp_C",
     "temp_absent_C",
-    "start",
     "beyond",
 )
 
@@ -151,17 +151,18 @@ def _model(data: FitInput, best: Candidate, covariance: FloatArray) -> dict[str,
 def settle_rule(coefficients: FloatArray) -> tuple[float, float]:
     """Return after what time and what swing (share of full scale) the state at power-up matters less than 1 % FS.
 
-    A creep state that starts half a full scale wrong decays with its own time constant; a play operator is forgotten
-    once its input has swung over twice its half width.
+    A creep state that starts half a full scale wrong decays with its own time constant; a play is forgotten once its
+    input has swung over twice its half width, and until then may hang anywhere in its backlash.
     """
     gains, taus = np.abs(coefficients[CREEPS]), np.array(CREEP_TAU_S)
     times = np.geomspace(0.01, 1000.0, 200)
-    left = 0.5 * np.exp(-times[:, None] / taus) @ gains
-    time_s = float(times[min(int(np.argmax(left < 0.01)) if (left < 0.01).any() else 199, 199)])
-    loops = np.abs(coefficients[PLAYS]) + np.abs(coefficients[PLAYS_BY_LOAD])
-    matter = loops * np.array(PLAY_HALF_WIDTH) > 0.002
-    widest = float(np.max(np.array(PLAY_HALF_WIDTH)[matter])) if matter.any() else 0.0
-    return time_s, min(2.0 * widest, 0.6)
+    crept = 0.5 * np.exp(-times[:, None] / taus) @ gains
+    soon = np.flatnonzero(crept < FORGOTTEN)
+    widths = np.array(PLAY_HALF_WIDTH)
+    loops = (np.abs(coefficients[PLAYS]) + 0.5 * np.abs(coefficients[PLAYS_BY_LOAD])) * widths
+    swings = np.concatenate([[0.0], 2.0 * widths])
+    left = np.array([np.sqrt(np.sum(loops[2.0 * widths > swing] ** 2) / 3.0) for swing in swings])
+    return float(times[soon[0]] if len(soon) else times[-1]), float(swings[int(np.argmax(left < FORGOTTEN))])
 
 
 def _zero(data: FitInput) -> dict[str, Any]:

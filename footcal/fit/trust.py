@@ -12,8 +12,7 @@ from footcal.fit.passes import Reading
 from footcal.fit.robust import robust_sd
 from footcal.fit.rows import Rows
 from footcal.records import FloatArray
-from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
-from footcal.sensor.model import CREEPS, PLAYS, PLAYS_BY_LOAD, RuntimeUncertainty
+from footcal.sensor.model import RuntimeUncertainty
 
 # Scatter between days and mountings, share of full scale at zero and share of force (common practice, no source).
 DAY_ZERO: Final = {"cell": 0.0005, "resistive": 0.003, "magnetic": 0.002, "capacitive": 0.002}
@@ -68,8 +67,6 @@ def runtime_uncertainty(
     load_fixed, load_relative = fixed_and_relative(*hold_means(rows, best.left_out.loads))
     pump = best.left_out.pump
     moving = robust_sd(pump[np.isfinite(pump)])
-    gains = fitted.coefficients
-    loop = float(np.sum(np.abs(gains[PLAYS] + 0.5 * gains[PLAYS_BY_LOAD]) * np.array(PLAY_HALF_WIDTH)))
     untested = 0.0 if temperature_known else UNTESTED_PER_K[kind] * UNTESTED_HALF_RANGE_K / np.sqrt(3.0)
     return (
         RuntimeUncertainty(
@@ -83,7 +80,6 @@ def runtime_uncertainty(
             moving=moving,
             noise=reading.sample_noise,
             noise_interval_s=reading.interval_s,
-            start=loop + 0.3 * float(np.sum(np.abs(gains[CREEPS]))),
         ),
         covariance,
     )

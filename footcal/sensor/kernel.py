@@ -206,6 +206,27 @@ def _noise_share(s: Any, c: Any, k: int) -> float:
 
 
 @njit(error_model="numpy")
+def _start_variance(swing: float, s: Any, c: Any, k: int) -> float:
+    """Variance from not knowing the state at power-up, of full scale squared.
+
+    A play wider than the swing since then may hang anywhere in its backlash (rectangular); a creep state may lack
+    half of what the load would have brought it, which decays with its own time constant.
+    """
+    v = s.sen_phi[1, k]
+    left = 0.0
+    for i in range(6):
+        if 2.0 * c.sen_h[i, k] > swing:
+            left += ((c.sen_coef[11 + i, k] + c.sen_coef[17 + i, k] * v) * c.sen_h[i, k]) ** 2 / 3.0
+    since_s = (s.sen_t_ns[k] - s.sen_start_ns[k]) * 1e-9
+    if since_s < 3.0 * c.sen_tau_s[7, k]:
+        crept = 0.0
+        for i in range(8):
+            crept += (c.sen_coef[23 + i, k] * np.exp(-since_s / c.sen_tau_s[i, k])) ** 2
+        left += 0.25 * v * v * crept
+    return left
+
+
+@njit(error_model="numpy")
 def _force(theta: float, known_C: float, flags: int, s: Any, c: Any, k: int) -> None:
     """Force, its standard uncertainty and the flags, from the features."""
     total = 0.0
@@ -245,7 +266,7 @@ def _force(theta: float, known_C: float, flags: int, s: Any, c: Any, k: int) -> 
     swing = s.sen_hi[k] - s.sen_lo[k]
     if swing < c.sen_settle_swing[k] or s.sen_t_ns[k] - s.sen_start_ns[k] < c.sen_settle_ns[k]:
         flags |= START_STATE_UNFORGOTTEN
-        u2 += c.sen_u_start_N[k] ** 2
+    u2 += full_scale_N * full_scale_N * _start_variance(swing, s, c, k)
     s.axial_N[k] = force_N
     s.axial_u_N[k] = np.sqrt(u2)
     s.axial_new[k] = 1

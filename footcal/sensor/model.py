@@ -54,7 +54,6 @@ class RuntimeUncertainty:
     )
     temp_C: float = 0.3  # standard uncertainty of the temperature while a thermometer reads
     temp_absent_C: float = 10.0  # the same without a thermometer: half range over root 3
-    start: float = 0.0  # of full scale, until the start state is forgotten
     beyond: float = 0.5  # share of the force above the highest calibrated load
 
 
