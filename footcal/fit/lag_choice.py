@@ -1,7 +1,7 @@
 """How much of a sensor's stated lag to undo: as much as removes more error than the noise it adds.
 
-Undoing a first-order lag on a 1 kHz channel amplifies noise (see sensor/lag.py). Leaving a part t of it in costs t times
-the rate of change of the force. The best lead balances the two for the rate of change of walking, whose root mean
+Undoing a first-order lag on a 1 kHz channel amplifies noise (see sensor/lag.py). Leaving a part t of it in costs t
+times the rate of change of the force. The best lead balances the two for the rate of change of walking, whose root mean
 square over stance, impacts included, is some eight full scales a second (from simulated walks).
 """
 

@@ -53,9 +53,9 @@ def window_mean(t_s: FloatArray, signal: FloatArray, ends_s: FloatArray, window_
         left = np.clip(np.searchsorted(t_s, at_s, side="right") - 1, 0, max(t_s.size - 2, 0))
         into_s = at_s - t_s[left]  # before the first sample the signal stood where it starts
         if t_s.size == 1:
-            return into_s * signal[0]
+            return np.asarray(into_s * signal[0])
         slope = (signal[left + 1] - signal[left]) / (t_s[left + 1] - t_s[left])
-        return area[left] + into_s * (signal[left] + 0.5 * np.where(into_s < 0.0, 0.0, slope) * into_s)
+        return np.asarray(area[left] + into_s * (signal[left] + 0.5 * np.where(into_s < 0.0, 0.0, slope) * into_s))
 
     result: FloatArray = (area_to(ends_s) - area_to(ends_s - window_s)) / window_s
     return result

@@ -7,7 +7,7 @@ Every curve maps strain (share of full scale, 1 at full load) to a signal that i
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Final, Protocol, Self, TypeVar
+from typing import Final, Protocol, TypeVar
 
 import numpy as np
 from scipy.optimize import brentq
@@ -26,7 +26,7 @@ class Curve(Protocol):
         """Return the signal, (n,), for strains of shape (n,)."""
         ...
 
-    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Curve:
         """Return the same curve bent to this signed departure from its terminal line (share of full output).
 
         `strain` (n,) is that of loads spread evenly from 0 to full: the mechanics have a bend of their own.
@@ -89,7 +89,7 @@ class Bridge:
         result: FloatArray = x + self.bow * (bowed + self.seat * seated * (x > 0.0) * (x < 1.0))
         return result
 
-    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Bridge:
         """Scale the bow."""
         return _bend(self, "bow", np.linspace(-6.0, 6.0, 49) * abs(nonlinearity), nonlinearity, strain)
 
@@ -115,7 +115,7 @@ class Divider:
         result: FloatArray = g / (1.0 + g)
         return result
 
-    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Divider:
         """Choose the fixed resistor."""
         return _bend(self, "conductance", np.geomspace(0.02, 60.0, 25), nonlinearity, strain)
 
@@ -134,7 +134,7 @@ class Magnet:
         result: FloatArray = field / ((1.0 - self.closing) ** -3 - 1.0)
         return result
 
-    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Magnet:
         """Choose how much of the gap is used."""
         return _bend(self, "closing", np.linspace(1e-3, 0.6, 49), nonlinearity, strain)
 
@@ -153,6 +153,6 @@ class Capacitor:
         result: FloatArray = charge / (1.0 / (1.0 - self.closing) - 1.0)
         return result
 
-    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Self:
+    def solve(self, nonlinearity: float, strain: FloatArray = GRID) -> Capacitor:
         """Choose how much of the gap is used."""
         return _bend(self, "closing", np.linspace(1e-3, 0.7, 49), nonlinearity, strain)

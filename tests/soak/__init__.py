@@ -1,0 +1,1 @@
+"""Long fault runs: `make soak`."""
