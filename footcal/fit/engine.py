@@ -164,8 +164,8 @@ def _notes(data: FitInput, best: Candidate, aligned: Aligned | None, lag_s: floa
     dwell_s = max(hold.t_end_s - hold.t_load_s for hold in data.holds)
     if best.fitted.terms.creep and dwell_s < 60.0:
         notes.append(f"longest dwell {dwell_s:.0f} s: creep over minutes is extrapolated by the smooth spectrum")
-    if lag_s < data.lag_s:
-        left_ms = 1e3 * (data.lag_s - lag_s)
+    left_ms = 1e3 * (data.lag_s - lag_s)
+    if left_ms > 0.05:
         notes.append(f"{left_ms:.2f} ms of the sensor's lag stay in: undoing them would add more noise than they cost")
     if data.channel.spikes_s:
         notes.append(f"{len(data.channel.spikes_s)} lone spikes in the readings were taken out")
