@@ -3,10 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import replace
 from typing import Final
 
-import numpy as np
 from threadpoolctl import threadpool_limits
 
 from footcal.calfile import Calibration
@@ -19,8 +17,9 @@ from footcal.fit.lag_choice import lag_to_undo_s
 from footcal.fit.leave_out import leave_out
 from footcal.fit.outcome import FitOutcome, FitResult
 from footcal.fit.passes import Fitted, fit_terms
-from footcal.fit.reference import Aligned, align, gain_and_zero, reference_signal
-from footcal.fit.rows import Rows, join_rows, pump_rows
+from footcal.fit.pumping import with_reference
+from footcal.fit.reference import Aligned
+from footcal.fit.rows import Rows, join_rows
 from footcal.fit.set_aside import Aside, bad_holds
 from footcal.fit.shape import check_shape
 from footcal.fit.terms import Terms
@@ -61,7 +60,7 @@ def fit_sessions(
 def _fitted(data: FitInput, on_try: Callable[[Terms], None]) -> FitResult:
     """Set bad steps aside, join the reference, choose the terms, check the shape, state the uncertainty."""
     middling, rows, asides = _without_bad_steps(data)
-    aligned, pump = _with_reference(data, middling)
+    aligned, pump = with_reference(data, middling)
     best = choose_terms(
         data.channel,
         data.reading,
@@ -115,26 +114,6 @@ def _without_bad_steps(data: FitInput) -> tuple[Fitted, Rows, list[Aside]]:
             "Check masses, times and the fixture, and run the session again.",
         )
     return fitted, rows, asides
-
-
-def _with_reference(data: FitInput, fitted: Fitted) -> tuple[Aligned | None, Rows | None]:
-    """Join the reference cell's clock to the foot's and return the rows of the pump recording.
-
-    A good cell judges the reference's gain and zero better than its sheet does, so they are taken from the fit to the
-    masses; a pad does not, and its reference stands as it is.
-    """
-    signal = reference_signal(data.channel, list(data.sessions))
-    if signal is None:
-        return None, None
-    reading = fitted.apparent * data.capacity_N
-    aligned = align(data.channel, reading, signal, data.lag_s)
-    force_N = aligned.force_N
-    if data.kind == "cell":
-        known = np.isfinite(force_N) & (np.abs(force_N) < 2.0 * data.capacity_N)
-        gain, zero_N = gain_and_zero(reading[known], force_N[known])
-        force_N = (force_N - zero_N) / gain
-    pump = pump_rows(data.channel, list(signal.windows_s), force_N, data.capacity_N)
-    return replace(aligned, force_N=force_N), pump if len(pump.start) else None
 
 
 def _looked_at_again(
