@@ -13,6 +13,7 @@ from footcal.fit.channel import Channel
 from footcal.fit.leave_out import LeftOut, leave_out
 from footcal.fit.passes import Fitted, Reading, fit_terms
 from footcal.fit.rows import Rows
+from footcal.fit.shape import check_shape
 from footcal.fit.terms import Terms
 
 GAIN: Final = 0.03
@@ -67,14 +68,17 @@ def choose_terms(
         on_try: called before each candidate (progress).
 
     Raises:
-        FitRefusedError: no candidate can be fitted.
+        FitRefusedError: no candidate can be fitted, or none rises with the reading everywhere.
     """
+    refusals: list[FitRefusedError] = []
 
     def evaluate(terms: Terms) -> Candidate | None:
         on_try(terms)
         try:
             fitted = fit_terms(channel, reading, rows, terms)
-        except FitRefusedError:
+            check_shape(fitted, "fit")
+        except FitRefusedError as error:
+            refusals.append(error)
             return None
         return Candidate(fitted, leave_out(fitted, rows))
 
@@ -83,7 +87,7 @@ def choose_terms(
         trial = evaluate(terms)
         best = trial if best is None else _better(best, trial)
     if best is None:
-        raise FitRefusedError("fit", "no curve can be fitted to these loads", "Run a session with more loads.")
+        raise refusals[-1]
     for more in RICHER:
         richer = replace(best.fitted.terms, **more)
         if richer.active().sum() > best.fitted.terms.active().sum():

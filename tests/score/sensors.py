@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from footcal.fit.engine import FitResult, fit_sessions
 from footcal.records import FloatArray
+from footcal.sensor.compensator import Compensator
 from footcal.sim.bench import PARTS, run_session
 from footcal.sim.noise import window_mean, windows_s
 from footcal.sim.sensors import draw_sensor
@@ -42,6 +43,31 @@ def score_foot(kind: str, seed: int, parts: Iterable[str] = PARTS) -> dict[str, 
         force_N, u_N = converted(result.calibration, trial)
         errors[name] = _error(result, trial, force_N, u_N, by_hold=name == "static", rate_Hz=rate_Hz)
     return errors
+
+
+def loop_reduction(kind: str, seed: int) -> tuple[float, float]:
+    """Return the loop's width of a pump recording that was never fitted, % of full scale: curve alone, whole model.
+
+    Width: mean error while unloading less mean error while loading, over 30 to 60 % of full scale.
+    """
+    rng = np.random.default_rng(seed)
+    sensor = draw_sensor(kind, rng)
+    result = fit_sessions([as_session(run_session(sensor, rng))])
+    fresh = run_session(sensor, rng, parts=("pump",))
+    t_s, raw, temp_C = (np.asarray(fresh.readings[name]) for name in ("t_s", "raw", "temp_C"))
+    true = window_mean(t_s, fresh.force_N, t_s, windows_s(t_s, 1.0 / sensor.rate_Hz)) / sensor.capacity_N
+    whole = result.calibration.force(t_s, raw, temp_C).force_N / sensor.capacity_N
+    model = result.calibration.sensor_model
+    bare = replace(model, coefficients=np.eye(1, len(model.coefficients), 1)[0], lag_s=0.0)
+    t_ns = np.rint(t_s * 1e9).astype(np.int64) + 1
+    curve_alone = Compensator(bare).run(t_ns, raw, temp_C).force_N / sensor.capacity_N
+    rate = np.gradient(true, t_s)
+    inside = (true > 0.3) & (true < 0.6)
+    rising, falling = inside & (rate > 0.2), inside & (rate < -0.2)
+    widths = [
+        100.0 * float(np.mean((read - true)[falling]) - np.mean((read - true)[rising])) for read in (curve_alone, whole)
+    ]
+    return widths[0], widths[1]
 
 
 def _error(
