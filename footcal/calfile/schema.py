@@ -56,6 +56,7 @@ class SessionUsed(Part):
     weights: str | None = None
     samples: int = Field(ge=1)
     holds: int = Field(ge=0)
+    corrected: list[str] = Field(default=[], description="masses put right before the fit, in words")
 
 
 class Provenance(Part):

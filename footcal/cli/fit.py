@@ -26,19 +26,29 @@ def fit(
     kind: Annotated[str | None, typer.Option("--kind", help="cell, resistive, magnetic or capacitive.")] = None,
     capacity: Annotated[float | None, typer.Option("--capacity", help="Full scale, newtons.")] = None,
     raw_max: Annotated[float | None, typer.Option("--raw-max", help="Top of the converter, counts.")] = None,
+    correct_mass: Annotated[
+        list[str] | None,
+        typer.Option("--correct-mass", metavar="STEP=KG", help="Mass to use for a step; SESSION:STEP=KG for several."),
+    ] = None,
     json: Annotated[bool, typer.Option("--json", help="Print one JSON document.")] = False,
 ) -> None:
     """Fit the sensor model of one foot to its bench sessions and write the calibration file."""
     from footcal.cli.console import print_json, progress, talk
     from footcal.files.session import read_session
     from footcal.files.session_meta import SessionDefaults
+    from footcal.fit.correct_mass import parse_corrections
     from footcal.fit.engine import fit_sessions
 
     defaults = SessionDefaults(foot_id=foot, kind=kind, capacity_N=capacity, raw_max=raw_max)
+    corrections = parse_corrections(correct_mass or [])
     read = [read_session(folder, defaults) for folder in sessions]
     with progress("choosing terms") as done:
         result = fit_sessions(
-            read, on_try=lambda terms: done(0.0, f"trying {terms.words()}"), kind=kind, capacity_N=capacity
+            read,
+            on_try=lambda terms: done(0.0, f"trying {terms.words()}"),
+            kind=kind,
+            capacity_N=capacity,
+            correct_mass=corrections,
         )
     result.calibration.save(out)
     if report is not None:

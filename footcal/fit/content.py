@@ -222,6 +222,7 @@ def _sessions(data: FitInput) -> list[dict[str, Any]]:
                 "weights": ", ".join(str(weight.get("name", "?")) for weight in meta.weights) or None,
                 "samples": len(session.t_s),
                 "holds": int(np.sum(data.session_of == number)),
+                "corrected": [one.words() for one in data.corrections if one.session == number],
             }
         )
     return used

@@ -10,6 +10,7 @@ import numpy as np
 from footcal.errors import SessionError, SettingError
 from footcal.files.session import Session
 from footcal.fit.channel import Channel, join
+from footcal.fit.correct_mass import Correction
 from footcal.fit.holds import BenchPlace, bench_place, check_loads, holds_of
 from footcal.fit.passes import Reading
 from footcal.fit.reading import RawForm, first_press, raw_form, reading_of, temperature_levels
@@ -36,6 +37,7 @@ class FitInput:
     temperatures: int
     assumed: tuple[str, ...]
     lag_s: float  # first-order delay of the sensor, as stated
+    corrections: tuple[Correction, ...] = ()  # masses put right before the fit
 
     @property
     def levels(self) -> int:
