@@ -83,6 +83,10 @@ class Hold:
     load_N: float  # force on the sensor for a massless foot, positive when pressed
     load_u_N: float  # its standard uncertainty
     mass_kg: float  # as entered; NaN where load_N was given
+    side_x_N: float = 0.0  # force of the load on the tilted foot along sensor x and y; load_N is then its axial part
+    side_y_N: float = 0.0
+    tilt_x_deg: float = 0.0  # how the foot was turned, see files.session_steps
+    tilt_y_deg: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)

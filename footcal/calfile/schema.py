@@ -128,7 +128,10 @@ class Zero(Part):
     """The state the zero refers to."""
 
     stated_for: Literal["massless foot", "hanging foot"]
-    mount: Literal["foot_up", "foot_down", "side"] | None = None
+    mount: Literal["foot_up", "foot_down", "side", "angle"] | None = None
+    mount_angle_rad: float | None = Field(
+        default=None, description="sensor axis (sole to leg) from straight up, where mount is angle"
+    )
     mass_below_sensor_kg: NotNegative = 0.0
 
 

@@ -1,4 +1,10 @@
-"""The steps of a bench session, brought to one form: kinds filled in, undone rows removed, every figure checked."""
+"""The steps of a bench session, brought to one form: kinds filled in, undone rows removed, every figure checked.
+
+Tilt: `tilt_x_deg` and `tilt_y_deg` say how the foot was turned, right-handed about the sensor's x and y axes (about x
+first, then about the foot's own y), out of the posture in which the load acts along the sensor's axis. The sensor's z
+points from the sole to the leg, x and y are those of `footcal.leg.constants.sensor_frame`. A load of W newtons then
+presses with W (-cos a sin b, sin a, cos a cos b) along x, y and z; a is the turn about x, b that about y.
+"""
 
 from __future__ import annotations
 
@@ -14,10 +20,12 @@ from footcal.records import FloatArray
 
 TEXT_COLUMNS: Final = ("direction", "kind", "series", "note")
 REQUIRED_COLUMNS: Final = ("step", "cycle", "direction", "t_start_s", "t_end_s")
-COLUMNS: Final = (*REQUIRED_COLUMNS, "mass_kg", "load_N", "kind", "series", "t_load_s", "note")
+TILT_COLUMNS: Final = ("tilt_x_deg", "tilt_y_deg")
+COLUMNS: Final = (*REQUIRED_COLUMNS, "mass_kg", "load_N", "kind", "series", "t_load_s", "note", *TILT_COLUMNS)
 DIRECTIONS: Final = ("zero", "up", "down")
 KINDS: Final = ("press", "hold", "quick", "pump", "knock", "swap", "tilted")
 LOADED_KINDS: Final = ("press", "hold", "quick", "tilted")  # of these the load must be known
+MOST_TILT_deg: Final = 60.0
 QUICK_WITHIN_s: Final = 0.5  # a zero that starts sooner after a load was whisked off
 
 Place = Callable[[int], str]  # row from 0 -> words for where it stands
@@ -32,8 +40,9 @@ def normal_steps(table: pd.DataFrame, t_s: FloatArray, place: Place) -> pd.DataF
     """Return the steps that count, in order of time, with every column of `COLUMNS` and a plain index.
 
     A row with `void_of` takes back the row of that step number; if it has a time window itself, it stands instead.
-    An empty `kind` becomes `quick` for a zero that starts < 0.5 s after a load step ends, else `hold`.
-    `t_load_s` is `t_start_s` where it was not recorded; a zero step has `load_N` 0 and no mass.
+    An empty `kind` becomes `tilted` where a tilt is given, `quick` for a zero that starts < 0.5 s after a load step
+    ends, else `hold`. `t_load_s` is `t_start_s` where it was not recorded; a zero step has `load_N` 0 and no mass; an
+    empty tilt is 0.
 
     Args:
         table: what `steps.csv` holds; `REQUIRED_COLUMNS` and one of mass_kg, load_N must be there.
@@ -56,8 +65,11 @@ def normal_steps(table: pd.DataFrame, t_s: FloatArray, place: Place) -> pd.DataF
     table["direction"] = _known_words(table["direction"], "direction", DIRECTIONS, refuse_if)
     _check_numbers(table, refuse_if)
     table["t_load_s"] = table["t_load_s"].fillna(table["t_start_s"])
+    for name in TILT_COLUMNS:
+        table[name] = table[name].fillna(0.0)
     table["kind"] = _known_words(_filled_kinds(table), "kind", KINDS, refuse_if)
     _check_loads(table, refuse_if)
+    _check_tilts(table, refuse_if)
     _check_inside(table, t_s, refuse_if)
     zero = table["direction"].to_numpy() == "zero"
     table.loc[zero, "load_N"] = table.loc[zero, "load_N"].fillna(0.0)
@@ -162,8 +174,9 @@ def _filled_kinds(table: pd.DataFrame) -> pd.Series:
     start, end = table["t_start_s"].to_numpy(), table["t_end_s"].to_numpy()
     after_load = np.zeros(len(table), dtype=bool)
     after_load[1:] = zero[1:] & ~zero[:-1] & (start[1:] - end[:-1] < QUICK_WITHIN_s)
+    tilted = (table[list(TILT_COLUMNS)].to_numpy() != 0.0).any(axis=1)
     kinds = table["kind"].astype(str).str.strip()
-    return kinds.where(kinds != "", np.where(after_load, "quick", "hold"))
+    return kinds.where(kinds != "", np.where(tilted, "tilted", np.where(after_load, "quick", "hold")))
 
 
 def _check_loads(table: pd.DataFrame, refuse_if: Callable[..., None]) -> None:
@@ -178,6 +191,24 @@ def _check_loads(table: pd.DataFrame, refuse_if: Callable[..., None]) -> None:
     )
     unknown = ~zero & np.isnan(mass) & np.isnan(load) & table["kind"].isin(LOADED_KINDS).to_numpy()
     refuse_if(unknown, "mass_kg", lambda _: "neither mass_kg nor load_N is given", "Write the mass put on.")
+
+
+def _check_tilts(table: pd.DataFrame, refuse_if: Callable[..., None]) -> None:
+    level = (table["kind"] != "tilted").to_numpy()
+    for name in TILT_COLUMNS:
+        tilt_deg = table[name].to_numpy()
+        refuse_if(
+            ~(np.abs(tilt_deg) <= MOST_TILT_deg),
+            name,
+            lambda i, tilt_deg=tilt_deg: f"a tilt of {tilt_deg[i]:g} degrees is beyond ±{MOST_TILT_deg:g}",
+            "Write the angle of the wedge in degrees.",
+        )
+        refuse_if(
+            level & (tilt_deg != 0.0),
+            name,
+            lambda i: f"a step of kind {table['kind'].iloc[i]!r} has a tilt",
+            "Write kind tilted, or clear the tilt: only tilted steps may carry one.",
+        )
 
 
 def _check_inside(table: pd.DataFrame, t_s: FloatArray, refuse_if: Callable[..., None]) -> None:

@@ -12,7 +12,8 @@ from footcal.fit.channel import THERMOMETER_LAG_S
 from footcal.fit.choose import Candidate
 from footcal.fit.inputs import FitInput
 from footcal.fit.outcome import FitOutcome
-from footcal.fit.rows import Rows
+from footcal.fit.rows import LEVEL_SHARE, Rows
+from footcal.fit.side_load import UNTESTED, SideLoad
 from footcal.fit.trust import DAY_SPAN, DAY_ZERO
 from footcal.records import FloatArray
 from footcal.sensor.creep import CREEP_TAU_S
@@ -20,7 +21,6 @@ from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
 from footcal.sensor.model import CREEPS, FEATURES, PLAYS, PLAYS_BY_LOAD, RuntimeUncertainty
 from footcal.sensor.transform import POWER_OFFSET
 
-CROSS_AXIS_DEFAULT: Final = {"cell": 0.01, "resistive": 0.03, "magnetic": 0.03, "capacitive": 0.03}
 UNLOAD_DECAY_S: Final = 6.0
 FORGOTTEN: Final = 0.01  # of full scale: below this the state at power-up no longer matters
 
@@ -29,7 +29,7 @@ def calibration_content(outcome: FitOutcome) -> dict[str, Any]:
     """Return everything the calibration file holds but its digest, as plain JSON values."""
     data, best, rows = outcome.data, outcome.best, outcome.rows
     uncertainty, covariance = outcome.uncertainty, outcome.covariance
-    low_N, high_N = float(rows.target.min()) * data.capacity_N, float(rows.target.max()) * data.capacity_N
+    low_N, high_N = float(rows.target.min()) * data.capacity_N, _highest_N(data, rows)
     cycles, loads, pump = best.left_out.rms_percent()
     now = dt.datetime.now(dt.UTC).isoformat(timespec="seconds")
     return {
@@ -41,7 +41,7 @@ def calibration_content(outcome: FitOutcome) -> dict[str, Any]:
         },
         "provenance": {"made_utc": now, "tool_version": __version__, "sessions": _sessions(data)},
         "input": _input(data, best, outcome.lag_s),
-        "model": _model(data, best, covariance),
+        "model": {**_model(best, covariance), "cross_axis": _cross_axis(data, outcome.side)},
         "unload": {"share_of_peak": unload_share(best, rows, data), "decay_s": UNLOAD_DECAY_S},
         "zero": _zero(data),
         "validity": {
@@ -82,6 +82,16 @@ _RUNTIME: Final = (
     "temp_absent_C",
     "beyond",
 )
+
+
+def _highest_N(data: FitInput, rows: Rows) -> float:
+    """Return the highest load fitted, below any at which the reading stuck at its end, newtons."""
+    loads_N = rows.target * data.capacity_N
+    if data.saturated_from_N is not None:
+        below_N = loads_N[loads_N < data.saturated_from_N - LEVEL_SHARE * data.capacity_N]
+        if below_N.size and below_N.max() > 0.0:
+            return float(below_N.max())
+    return float(loads_N.max())
 
 
 def unload_share(best: Candidate, rows: Rows, data: FitInput) -> float:
@@ -130,9 +140,8 @@ def _input(data: FitInput, best: Candidate, lag_s: float) -> dict[str, Any]:
     }
 
 
-def _model(data: FitInput, best: Candidate, covariance: FloatArray) -> dict[str, Any]:
+def _model(best: Candidate, covariance: FloatArray) -> dict[str, Any]:
     fitted = best.fitted
-    cross_u = CROSS_AXIS_DEFAULT[data.kind]
     time_s, swing = settle_rule(fitted.coefficients)
     return {
         "curve": fitted.curve.tolist(),
@@ -143,9 +152,15 @@ def _model(data: FitInput, best: Candidate, covariance: FloatArray) -> dict[str,
         "features": list(FEATURES),
         "coefficients": fitted.coefficients.tolist(),
         "covariance": [covariance[i, : i + 1].tolist() for i in range(len(covariance))],
-        "cross_axis": {"x": 0.0, "y": 0.0, "u_x": cross_u, "u_y": cross_u, "tested": False},
         "settle": {"time_s": time_s, "swing_share": swing},
     }
+
+
+def _cross_axis(data: FitInput, side: SideLoad | None) -> dict[str, Any]:
+    """Return the cross-sensitivity found, or the stated default of a foot that was never tilted."""
+    if side is None:
+        return {"x": 0.0, "y": 0.0, "u_x": UNTESTED[data.kind], "u_y": UNTESTED[data.kind], "tested": False}
+    return {"x": side.cross[0], "y": side.cross[1], "u_x": side.u[0], "u_y": side.u[1], "tested": side.tested}
 
 
 def settle_rule(coefficients: FloatArray) -> tuple[float, float]:
@@ -169,7 +184,8 @@ def _zero(data: FitInput) -> dict[str, Any]:
     meta = data.sessions[0].meta
     return {
         "stated_for": "hanging foot" if meta.mount is None else "massless foot",
-        "mount": meta.mount if meta.mount in {"foot_up", "foot_down", "side"} else None,
+        "mount": meta.mount,
+        "mount_angle_rad": meta.mount_angle_rad if meta.mount == "angle" else None,
         "mass_below_sensor_kg": meta.mass_below_sensor_kg or 0.0,
     }
 

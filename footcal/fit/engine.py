@@ -24,6 +24,7 @@ from footcal.fit.reference import Aligned
 from footcal.fit.rows import Rows, join_rows
 from footcal.fit.set_aside import Aside
 from footcal.fit.shape import check_shape
+from footcal.fit.side_load import side_load
 from footcal.fit.terms import Terms
 from footcal.fit.trust import runtime_uncertainty
 
@@ -85,8 +86,10 @@ def _fitted(data: FitInput, on_try: Callable[[Terms], None]) -> FitResult:
         reference_relative=data.place.gravity_u_m_per_s2 / data.place.gravity_m_per_s2,
     )
     lag_s = lag_to_undo_s(data.lag_s, data.channel, best.fitted, rows)
-    notes = tuple(_notes(data, best, aligned, lag_s))
-    outcome = FitOutcome(data, best, rows, tuple(asides), aligned, uncertainty, covariance, notes, lag_s)
+    side = side_load(data, best.fitted, uncertainty)
+    asides += side.asides if side else ()
+    notes = (*_notes(data, best, aligned, lag_s), *(side.notes if side else ()))
+    outcome = FitOutcome(data, best, rows, tuple(asides), aligned, uncertainty, covariance, notes, side, lag_s)
     return FitResult(outcome, Calibration.from_content(calibration_content(outcome)))
 
 

@@ -13,7 +13,7 @@ from footcal.files.session import Session
 from footcal.files.session_meta import SessionMeta
 from footcal.physics.force import mass_force
 from footcal.physics.gravity import STANDARD_GRAVITY_m_per_s2
-from footcal.records import Hold
+from footcal.records import FloatArray, Hold
 
 AXIS_UP_SHARE = {"foot_down": 1.0, "foot_up": -1.0, "side": 0.0}  # cosine of sensor axis (sole to leg) and up
 
@@ -51,8 +51,19 @@ def bench_place(meta: SessionMeta) -> BenchPlace:
     return BenchPlace(gravity, gravity_u if gravity_u is not None else 0.0005, zero_N, tuple(assumed))
 
 
+def load_direction(tilt_x_deg: float, tilt_y_deg: float) -> FloatArray:
+    """Return along which way a load presses a tilted foot, sensor x, y, z, shape (3,), length 1.
+
+    The third row of R_x(a) R_y(b), which is what the load's direction becomes in the turned frame.
+    """
+    a, b = np.radians(tilt_x_deg), np.radians(tilt_y_deg)
+    return np.array([-np.cos(a) * np.sin(b), np.sin(a), np.cos(a) * np.cos(b)])
+
+
 def holds_of(session: Session, place: BenchPlace, least_loads: int = 2) -> list[Hold]:
     """Return the holds of a session in order of time, each with the force on the sensor and its uncertainty.
+
+    A tilted hold's load acts along the vertical, and so does the weight below the sensor; `load_N` is the axial part.
 
     Args:
         session: with steps.
@@ -60,9 +71,19 @@ def holds_of(session: Session, place: BenchPlace, least_loads: int = 2) -> list[
         least_loads: how many different loads there must be; a curve needs two, a check one.
 
     Raises:
-        SessionError: too few different loads.
+        SessionError: too few different loads, or tilted steps in a mount where the weight below the sensor pulls aside.
     """
     rows = session.steps[~session.steps["kind"].isin(["pump", "knock"])]
+    if (
+        session.meta.mount in {"side", "angle"}
+        and session.meta.mass_below_sensor_kg
+        and (rows["kind"] == "tilted").any()
+    ):
+        raise SessionError(
+            f"{session.name}, steps",
+            f"tilted steps with mount {session.meta.mount}: which way the weight below the sensor pulls is not known",
+            "Tilt the foot out of foot_up or foot_down.",
+        )
     holds = [_hold(row, place) for _, row in rows.iterrows()]
     check_loads(holds, session.name, least_loads)
     return holds
@@ -94,6 +115,8 @@ def _hold(values: pd.Series, place: BenchPlace) -> Hold:
             mass_kg, gravity_m_per_s2=place.gravity_m_per_s2, gravity_u_m_per_s2=place.gravity_u_m_per_s2
         )
         force_N, u_N = force.force_N, force.u_N
+    tilt_x_deg, tilt_y_deg = float(values["tilt_x_deg"]), float(values["tilt_y_deg"])
+    side_x, side_y, axial = (float(share) for share in load_direction(tilt_x_deg, tilt_y_deg))
     return Hold(
         step=int(values["step"]),
         cycle=int(values["cycle"]),
@@ -102,7 +125,11 @@ def _hold(values: pd.Series, place: BenchPlace) -> Hold:
         t_start_s=float(values["t_start_s"]),
         t_end_s=float(values["t_end_s"]),
         t_load_s=float(values["t_load_s"]),
-        load_N=force_N + place.zero_N,
-        load_u_N=u_N,
+        load_N=(force_N + place.zero_N) * axial,
+        load_u_N=u_N * axial,
         mass_kg=mass_kg,
+        side_x_N=(force_N + place.zero_N) * side_x,
+        side_y_N=(force_N + place.zero_N) * side_y,
+        tilt_x_deg=tilt_x_deg,
+        tilt_y_deg=tilt_y_deg,
     )

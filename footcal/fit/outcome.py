@@ -10,6 +10,7 @@ from footcal.fit.inputs import FitInput
 from footcal.fit.reference import Aligned
 from footcal.fit.rows import Rows
 from footcal.fit.set_aside import Aside
+from footcal.fit.side_load import SideLoad
 from footcal.records import FloatArray
 from footcal.sensor.model import RuntimeUncertainty
 
@@ -26,6 +27,7 @@ class FitOutcome:
     uncertainty: RuntimeUncertainty
     covariance: FloatArray  # (32, 32) of the coefficients
     notes: tuple[str, ...]
+    side: SideLoad | None  # None where the foot was never tilted
     lag_s: float  # of the stated lag, what the compensator undoes
 
     @property

@@ -40,7 +40,10 @@ class Rows:
 
     def without_holds(self, holds: set[int]) -> Rows:
         """Return the rows less those of the holds named."""
-        keep = ~np.isin(self.hold, sorted(holds)) | self.pump
+        return self.kept(~np.isin(self.hold, sorted(holds)) | self.pump)
+
+    def kept(self, keep: BoolArray) -> Rows:
+        """Return the rows marked, `keep` of shape (rows,)."""
         return Rows(*(getattr(self, name)[keep] for name in self.__slots__))
 
 

@@ -6,6 +6,7 @@ import os
 
 import numpy as np
 
+from footcal.calfile.schema import Zero
 from footcal.fit.outcome import FitResult
 from footcal.report.calibration_pictures import budget_picture, curve_pictures, error_pictures, trust_pictures
 from footcal.report.page import CAUTION, Page, Section, Table, write_page
@@ -74,7 +75,7 @@ def calibration_page(result: FitResult) -> Page:
 def _identity(result: FitResult) -> Section:
     file, place = result.calibration.file, result.data.place
     gravity = f"{place.gravity_m_per_s2:.5f} ± {place.gravity_u_m_per_s2:.2g} m/s²"
-    mount = f"{file.zero.mount or 'not stated'}, {file.zero.mass_below_sensor_kg:g} kg below the sensor"
+    mount = f"{_mount(file.zero)}, {file.zero.mass_below_sensor_kg:g} kg below the sensor"
     limit_N = file.sensor.safe_limit_N
     rows = tuple(
         (used.name, moment(used.start_utc), used.operator or "–", f"{used.samples}", f"{used.holds}", used.sha256[:16])
@@ -179,6 +180,12 @@ def _left_aside(result: FitResult) -> Section:
             ),
         ),
     )
+
+
+def _mount(zero: Zero) -> str:
+    if zero.mount == "angle":
+        return f"{np.degrees(zero.mount_angle_rad or 0.0):.1f}° from straight up"
+    return zero.mount or "not stated"
 
 
 def _notes(result: FitResult) -> Section:

@@ -52,6 +52,7 @@ def run_session(
     weight_class: str | None = None,
     mount: str = "foot_up",
     mass_below_sensor_kg: float = 0.0,
+    mount_angle_rad: float = 0.0,
     reference: str = "column",
     clock_offset_s: float | None = None,
     rate_Hz: float | None = None,
@@ -69,8 +70,9 @@ def run_session(
         foot_id: serial number to write into the session.
         parts: which of `PARTS` to do.
         weight_class: an OIML class whose limits the weights use up, or None for exact masses.
-        mount: foot_up or foot_down.
+        mount: foot_up, foot_down, side or angle.
         mass_below_sensor_kg: hangs on (foot_down) or rests on (foot_up) the sensor, also at zero.
+        mount_angle_rad: sensor axis (sole to leg) from straight up, where mount is angle.
         reference: "column" (`ref_N` beside each reading) or "file" (its own rate and clock); used by the pump only.
         clock_offset_s: of the reference cell's clock; drawn within ±20 ms where not given.
         rate_Hz: readings per second; the converter's usual rate where not given.
@@ -83,7 +85,7 @@ def run_session(
     """
     _check(parts, mount, reference)
     box = draw_box(rng, weight_class)
-    rest_N = _rest_N(mount, mass_below_sensor_kg, box)
+    rest_N = _rest_N(mount, mass_below_sensor_kg, box, mount_angle_rad)
     offset_s = float(rng.uniform(-0.02, 0.02)) if clock_offset_s is None else clock_offset_s
     count = int(rng.integers(5, 7)) if sensor.sheet.transducer == "cell" else int(rng.integers(8, 10))
     loads = box.loads(sensor.capacity_N, uneven(rng, count))
@@ -101,6 +103,8 @@ def run_session(
     if "t_ref_s" not in ref:
         readings |= ref
     meta = session_meta(sensor, box, foot_id, mount, mass_below_sensor_kg, start_utc)
+    if mount == "angle":
+        meta["mount_angle_rad"] = mount_angle_rad
     return SimulatedSession(
         meta=meta,
         readings=readings,
@@ -215,9 +219,9 @@ def _reference(
     return {"ref_N": column}
 
 
-def _rest_N(mount: str, mass_below_kg: float, box: Box) -> float:
-    pull_N = box.gravity_m_per_s2 * mass_below_kg
-    return pull_N if mount == "foot_up" else -pull_N
+def _rest_N(mount: str, mass_below_kg: float, box: Box, angle_rad: float) -> float:
+    press = {"foot_up": 1.0, "foot_down": -1.0, "side": 0.0, "angle": -np.cos(angle_rad)}[mount]
+    return float(press) * box.gravity_m_per_s2 * mass_below_kg
 
 
 def session_meta(
@@ -249,7 +253,7 @@ def _check(parts: Collection[str], mount: str, reference: str) -> None:
             where="run_session, parts", what=f"there is no part {wrong[0]!r}", mend=f"Choose from {', '.join(PARTS)}."
         )
     for name, value, allowed in (
-        ("mount", mount, ("foot_up", "foot_down")),
+        ("mount", mount, ("foot_up", "foot_down", "side", "angle")),
         ("reference", reference, ("column", "file")),
     ):
         if value not in allowed:

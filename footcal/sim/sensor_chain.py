@@ -135,6 +135,7 @@ class SimulatedSensor:
         force_N: FloatArray,
         temp_C: FloatArray | float,
         rng: np.random.Generator,
+        side_N: FloatArray | None = None,
     ) -> FloatArray:
         """Return raw counts, (m,), at reading times that are fewer than the times of the force history, (n,).
 
@@ -144,7 +145,7 @@ class SimulatedSensor:
             SettingError: as `respond`.
         """
         t_s, force_N, temp_C = _checked(t_s, force_N, temp_C)
-        lagged = low_pass(t_s, self.signal(t_s, force_N, temp_C), self.lag_s)
+        lagged = low_pass(t_s, self.signal(t_s, force_N, temp_C, side_N), self.lag_s)
         return self._converted(np.ascontiguousarray(t_read_s, dtype=float), t_s, lagged, rng)
 
     def _converted(
