@@ -37,7 +37,7 @@ def read_recipe(path: str | os.PathLike[str]) -> ReadRecipe:
     """Return a checked recipe.
 
     Args:
-        path: a TOML file; or the bare name of a ready recipe, such as `load_cell`.
+        path: a TOML file; or the bare name of a ready recipe, such as `load_cell`, or of one on request only.
 
     Raises:
         FileFormatError: no such file, no TOML, or a bad value, whose path in the file is named.
@@ -70,20 +70,25 @@ def recipe_from(document: dict[str, Any], where: str) -> Recipe:
 
 
 def ready_recipes() -> dict[str, Path]:
-    """Return the recipes that come with footcal: name → path, in order of name.
+    """Return the recipes that come with footcal, less those on request only: name → path, in order of name.
 
     Raises:
-        FileFormatError: the folder is missing.
+        FileFormatError: the folder is missing, or a recipe in it is damaged.
     """
+    return {name: path for name, path in _all_ready().items() if not read_recipe(path).recipe.on_request}
+
+
+def _all_ready() -> dict[str, Path]:
     return {path.stem: path for path in sorted(data_dir("recipes").glob("*.toml"))}
 
 
 def _found(path: Path) -> Path:
     if path.suffix or path.exists() or path.parent != Path():
         return path
-    ready = ready_recipes()
-    if path.name in ready:
-        return ready[path.name]
+    every = _all_ready()
+    if path.name in every:
+        return every[path.name]
+    ready = ready_recipes()  # one that is on request only is not offered to who mistypes
     near = difflib.get_close_matches(path.name, list(ready), n=1)
     raise FileFormatError(
         where=str(path),

@@ -11,6 +11,7 @@ SensorKind = Literal["cell", "resistive", "magnetic", "capacitive"]
 Share = Annotated[float, Field(gt=0.0, le=1.0)]  # of capacity
 NotNegative = Annotated[float, Field(ge=0.0)]
 Positive = Annotated[float, Field(gt=0.0)]
+Slope = Annotated[float, Field(gt=0.0, le=45.0)]  # degrees
 Celsius = Annotated[float, Field(ge=-40.0, le=85.0)]
 Words = Annotated[str, Field(min_length=1)]
 
@@ -93,6 +94,51 @@ class Pump(Part):
     peak: Share = 0.9
 
 
+class Tilted(Part):
+    """Loads on a foot that stands on wedges, by which its side load is told from its axial load."""
+
+    wedges_deg: tuple[Slope, ...] = ()  # rising slopes
+    axes: tuple[Literal["x", "y"], ...] = ("x", "y")  # of the sensor; both ways about each
+    targets: tuple[Share, ...] = ()  # rising shares of capacity, along the vertical
+    dwell_s: Positive = 6.0
+
+    @model_validator(mode="after")
+    def _whole(self) -> Tilted:
+        if bool(self.wedges_deg) != bool(self.targets):
+            msg = "wedges and targets belong together"
+            raise ValueError(msg)
+        if list(self.wedges_deg) != sorted(set(self.wedges_deg)) or list(self.targets) != sorted(set(self.targets)):
+            msg = "wedges and targets must rise"
+            raise ValueError(msg)
+        if len(set(self.axes)) != len(self.axes) or not self.axes:
+            msg = "name each axis once"
+            raise ValueError(msg)
+        return self
+
+    @property
+    def postures(self) -> tuple[tuple[float, float], ...]:
+        """Tilts about sensor x and y, degrees, in the order in which the foot is turned on each wedge."""
+        about = {"x": (1.0, 0.0), "y": (0.0, 1.0)}
+        turns = [(sign * about[axis][0], sign * about[axis][1]) for sign in (1.0, -1.0) for axis in self.axes]
+        return tuple((slope * x, slope * y) for slope in self.wedges_deg for x, y in turns)
+
+
+class Stand(Part):
+    """One load that stands long, and the zero after it: creep over minutes."""
+
+    target: Share = 0.9  # of capacity
+    lasts_s: NotNegative = 0.0
+    zero_s: NotNegative = 0.0  # recording goes on this long after the load is off
+
+
+class Overload(Part):
+    """Loads above capacity, never above the sensor's stated safe limit: does the foot survive them?"""
+
+    count: Annotated[int, Field(ge=0, le=10)] = 0
+    target: Share = 1.0  # of the safe limit
+    dwell_s: Positive = 10.0
+
+
 class Temperatures(Part):
     """Bench temperatures; the first is the room, each further one gets a cycle of its own after a soak."""
 
@@ -145,15 +191,26 @@ class Recipe(Part):
     purpose: Words  # one sentence
     sensor_kinds: Annotated[tuple[SensorKind, ...], Field(min_length=1)]
     cautions: Annotated[tuple[Words, ...], Field(min_length=1)]
+    on_request: bool = False  # hard on the foot or on people: in no list, found by its name only
     presses: Presses = Presses()
     loading: Loading
     minor_loop: MinorLoop = MinorLoop()
     quick_lifts: QuickLifts = QuickLifts()
     pump: Pump = Pump()
+    tilted: Tilted = Tilted()
+    stand: Stand = Stand()
+    overload: Overload = Overload()
     temperatures: Temperatures = Temperatures()
     settle: Settle = Settle()
     acceptance: Acceptance = Acceptance()
     columns: dict[Words, Words | ColumnScale] = Field(default_factory=dict)
+
+    @model_validator(mode="after")
+    def _overload_is_asked_for(self) -> Recipe:
+        if self.overload.count and not self.on_request:
+            msg = "a recipe that loads beyond capacity must say on_request = true"
+            raise ValueError(msg)
+        return self
 
     @property
     def dynamic(self) -> bool:
@@ -172,4 +229,7 @@ class Recipe(Part):
         pressed = 2.0 * self.presses.count * (self.presses.dwell_s + reach_s)
         turned = len(self.minor_loop.targets) * (self.minor_loop.dwell_s + reach_s)
         lifted = self.quick_lifts.count * (2.0 * self.quick_lifts.stand_s + reach_s)
-        return held + pressed + turned + lifted + self.pump.lasts_s
+        on_wedges = len(self.tilted.postures) * (len(self.tilted.targets) + 1) * (self.tilted.dwell_s + reach_s)
+        over = 2.0 * self.overload.count * (self.overload.dwell_s + reach_s)
+        long = self.pump.lasts_s + self.stand.lasts_s + self.stand.zero_s
+        return held + pressed + turned + lifted + on_wedges + over + long
