@@ -83,3 +83,39 @@ def test_a_step_in_a_gap_of_the_readings_is_refused() -> None:
     table["mass_kg"] = 1.0
     with pytest.raises(FileFormatError, match="gap"):
         normal_steps(table, np.array([0.0, 10.0, 40.0, 50.0]), lambda row: f"line {row + 2}")
+
+
+def tilted(rows: str) -> pd.DataFrame:
+    """Return the normal form of rows that may carry a tilt."""
+    head = "step,cycle,direction,t_start_s,t_end_s,mass_kg,kind,tilt_x_deg,tilt_y_deg\n"
+    return normal_steps(
+        pd.read_csv(io.StringIO(head + rows)), np.arange(0.0, 100.0, 0.1), lambda row: f"line {row + 2}"
+    )
+
+
+def test_a_step_without_a_tilt_stands_level() -> None:
+    """Empty cells and absent columns are 0 degrees."""
+    table = tilted("1,1,up,0,5,2,,,\n2,1,up,6,9,2,tilted,15,\n")
+    assert table["tilt_x_deg"].to_list() == [0.0, 15.0]
+    assert table["tilt_y_deg"].to_list() == [0.0, 0.0]
+    assert steps("1,1,up,0,5,2,,,\n")["tilt_x_deg"].to_list() == [0.0]
+
+
+def test_a_step_with_a_tilt_and_no_kind_is_tilted() -> None:
+    """A zero on the wedge just after a load is tilted too, not quick."""
+    kinds = tilted("1,1,up,0,5,2,,,-30\n2,1,zero,5.2,9,,,,-30\n")["kind"]
+    assert kinds.to_list() == ["tilted", "tilted"]
+
+
+@pytest.mark.parametrize(
+    ("rows", "message"),
+    [
+        ("1,1,up,0,5,2,hold,15,\n", "line 2, column 'tilt_x_deg'.*'hold' has a tilt"),
+        ("1,1,up,0,5,2,tilted,,75\n", "line 2, column 'tilt_y_deg'.*beyond"),
+        ("1,1,up,0,5,2,tilted,inf,\n", "line 2, column 'tilt_x_deg'.*beyond"),
+    ],
+)
+def test_a_wrong_tilt_is_refused_with_its_row(rows: str, message: str) -> None:
+    """Only tilted steps may lean, and not beyond 60 degrees."""
+    with pytest.raises(FileFormatError, match=message):
+        tilted(rows)
