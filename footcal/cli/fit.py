@@ -30,6 +30,10 @@ def fit(
         list[str] | None,
         typer.Option("--correct-mass", metavar="STEP=KG", help="Mass to use for a step; SESSION:STEP=KG for several."),
     ] = None,
+    swing: Annotated[
+        Path | None, typer.Option("--swing", help="Log of a walk whose swings are fitted as zeros; give --leg as well.")
+    ] = None,
+    leg: Annotated[str | None, typer.Option("--leg", help="Leg that carried the foot in that log.")] = None,
     json: Annotated[bool, typer.Option("--json", help="Print one JSON document.")] = False,
 ) -> None:
     """Fit the sensor model of one foot to its bench sessions and write the calibration file."""
@@ -38,18 +42,26 @@ def fit(
     from footcal.files.session_meta import SessionDefaults
     from footcal.fit.correct_mass import parse_corrections
     from footcal.fit.engine import fit_sessions
+    from footcal.fit.swing import read_swings
 
     defaults = SessionDefaults(foot_id=foot, kind=kind, capacity_N=capacity, raw_max=raw_max)
     corrections = parse_corrections(correct_mass or [])
     read = [read_session(folder, defaults) for folder in sessions]
     with progress("choosing terms") as done:
-        result = fit_sessions(
-            read,
-            on_try=lambda terms: done(0.0, f"trying {terms.words()}"),
-            kind=kind,
-            capacity_N=capacity,
-            correct_mass=corrections,
-        )
+
+        def fitted() -> FitResult:
+            return fit_sessions(
+                read,
+                on_try=lambda terms: done(0.0, f"trying {terms.words()}"),
+                kind=kind,
+                capacity_N=capacity,
+                correct_mass=corrections,
+            )
+
+        result = fitted()
+        if swing is not None:
+            read.append(read_swings(result, swing, leg))
+            result = fitted()
     result.calibration.save(out)
     if report is not None:
         from footcal.report.calibration import write_calibration_report

@@ -83,7 +83,7 @@ def choose_terms(
         return Candidate(fitted, leave_out(fitted, rows))
 
     best: Candidate | None = None
-    for terms in _starting_terms(kind, levels, temperatures, has_pump=bool(rows.pump.any())):
+    for terms in _starting_terms(kind, levels, temperatures, has_pump=_moves_under_load(rows)):
         trial = evaluate(terms)
         best = trial if best is None else _better(best, trial)
     if best is None:
@@ -98,6 +98,11 @@ def choose_terms(
         if trial is not None and trial.error_against(best) < 1.0 / (1.0 - GAIN):
             best = trial
     return best
+
+
+def _moves_under_load(rows: Rows) -> bool:
+    """Whether quick reference data tell of loads as well, not only of swings."""
+    return bool(rows.pump.any()) and bool(rows.target[rows.pump].max() > 0.3 * rows.target.max())
 
 
 def _better(best: Candidate, trial: Candidate | None) -> Candidate:

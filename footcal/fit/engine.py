@@ -25,6 +25,7 @@ from footcal.fit.rows import Rows, join_rows
 from footcal.fit.set_aside import Aside
 from footcal.fit.shape import check_shape
 from footcal.fit.side_load import side_load
+from footcal.fit.swing import swing_rows
 from footcal.fit.terms import Terms
 from footcal.fit.trust import runtime_uncertainty
 
@@ -65,7 +66,9 @@ def fit_sessions(
 def _fitted(data: FitInput, on_try: Callable[[Terms], None]) -> FitResult:
     """Set bad steps aside, join the reference, choose the terms, check the shape, state the uncertainty."""
     middling, rows, asides = without_bad_steps(data)
-    aligned, pump = with_reference(data, middling)
+    aligned, pumped = with_reference(data, middling)
+    moving = [part for part in (pumped, swing_rows(data)) if part is not None]
+    pump = join_rows(moving) if moving else None
     best = choose_terms(
         data.channel,
         data.reading,

@@ -26,9 +26,10 @@ def huber_weights(scaled: FloatArray) -> FloatArray:
 
 
 def row_scales(residual: FloatArray, pump: BoolArray, floor: float) -> FloatArray:
-    """Return the robust scale of each row, shape (n,): one scale for holds, another for pump rows."""
-    scales = np.empty(len(residual))
-    for group in (pump, ~pump):
-        if group.any():
-            scales[group] = max(robust_sd(residual[group]), floor)
-    return scales
+    """Return the robust scale of each row, shape (n,): one scale for holds, another for pump rows.
+
+    Moving data never count for more than settled holds: an unloaded foot that reads the same a thousand times over
+    would otherwise outweigh every load.
+    """
+    settled = max(robust_sd(residual[~pump]), floor)
+    return np.where(pump, max(robust_sd(residual[pump]), settled), settled)
