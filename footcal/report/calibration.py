@@ -6,7 +6,7 @@ import os
 
 import numpy as np
 
-from footcal.calfile.schema import Zero
+from footcal.calfile.schema import CrossAxis, Zero
 from footcal.fit.outcome import FitResult
 from footcal.report.calibration_pictures import budget_picture, curve_pictures, error_pictures, trust_pictures
 from footcal.report.page import CAUTION, Page, Section, Table, write_page
@@ -87,6 +87,7 @@ def _identity(result: FitResult) -> Section:
             ("Foot", file.foot_id),
             ("Sensor", f"{KIND_WORDS[file.sensor.kind]}, {file.sensor.capacity_N:g} N full scale"),
             ("Safe limit", "not stated" if limit_N is None else f"{limit_N:g} N: never load the foot above it"),
+            ("Side load", _side_load(file.model.cross_axis)),
             ("Zero", f"stated for a {file.zero.stated_for}; mount {mount}"),
             ("Local gravity", gravity),
             ("Temperature", f"{file.validity.temp_min_C:g} to {file.validity.temp_max_C:g} °C in the windows"),
@@ -182,6 +183,15 @@ def _left_aside(result: FitResult) -> Section:
     )
 
 
+def _side_load(cross: CrossAxis) -> str:
+    if not cross.tested:
+        return "not tested along both axes, stated default"
+    return (
+        f"{100.0 * cross.x:+.2f} % of a load along sensor x and {100.0 * cross.y:+.2f} % along y read as axial "
+        f"(standard uncertainty {100.0 * cross.u_x:.2f} % and {100.0 * cross.u_y:.2f} %)"
+    )
+
+
 def _mount(zero: Zero) -> str:
     if zero.mount == "angle":
         return f"{np.degrees(zero.mount_angle_rad or 0.0):.1f}° from straight up"
@@ -199,7 +209,7 @@ def _cautions(result: FitResult) -> tuple[str, ...]:
     if not file.validity.dynamic:
         found.append("Only slow holds were fitted: readings while walking were never tested on this foot.")
     if not file.model.cross_axis.tested:
-        share = 100.0 * file.model.cross_axis.u_x
+        share = 100.0 * max(file.model.cross_axis.u_x, file.model.cross_axis.u_y)
         found.append(f"Side loads were not tested: {share:g} % of any side load is taken as uncertainty.")
     found.append(f"Outside {file.validity.force_min_N:.0f} to {file.validity.force_max_N:.1f} N nothing was tested.")
     return tuple(found)

@@ -14,7 +14,8 @@ from footcal.records import Health
 from footcal.sim.bench import run_session
 from footcal.sim.sensor_chain import SimulatedSensor
 from footcal.sim.sensors import draw_sensor
-from tests.simulated import as_session
+from footcal.sim.trials import static_trial
+from tests.simulated import as_session, converted
 
 PARTS = ("presses", "cycles", "quick")
 STOP_N = 180.0  # of 300 N: the top loads stick, the ones below do not
@@ -141,3 +142,14 @@ def test_the_dead_band_of_a_divider_pad_is_said() -> None:
 def test_sensors_without_a_dead_band_do_not_claim_one(kind: str) -> None:
     """Cells, magnets and capacitors follow from the first newton on."""
     assert not any(note.startswith("dead_band") for note in fit_sessions([session_of(kind, 102)[1]]).notes)
+
+
+def test_a_supply_that_wanders_is_covered_by_the_stated_uncertainty() -> None:
+    """A divider whose supply wanders by 0.1 % against its reference, another day: 9 of 10 settled readings within U."""
+    rng = np.random.default_rng(100)
+    sensor = replace(draw_sensor("P", rng), supply_share=1e-3)
+    result = fit_sessions([as_session(run_session(sensor, rng, parts=(*PARTS, "cold", "hot")))])
+    trial = static_trial(sensor.day(rng), rng)
+    force_N, u_N = converted(result.calibration, trial)
+    scored = trial.scored > 0.0
+    assert np.mean(np.abs(force_N - trial.force_N)[scored] <= 2.0 * u_N[scored]) >= 0.9

@@ -12,9 +12,13 @@ from footcal.files.session import read_session
 from footcal.fit.engine import fit_sessions
 from footcal.fit.outcome import FitResult
 from footcal.recipe.data import data_dir
-from footcal.report.calibration import write_calibration_report
+from footcal.report.calibration import calibration_page, write_calibration_report
 from footcal.report.points import hold_points
+from footcal.sim.bench import run_session
+from footcal.sim.sensors import draw_sensor
+from footcal.sim.tilting import run_tilted
 from tests.report.html_parts import outside_links, parts_of
+from tests.simulated import as_session
 
 PICTURES = {
     *("course", "loading", "loop", "by_force", "by_time", "by_temperature", "left_out"),
@@ -65,6 +69,20 @@ def test_report_states_what_the_file_states(html: str, result: FitResult) -> Non
     assert "Side loads were not tested" in text
     assert "Invented data." in text
     assert " nan " not in text.lower()
+
+
+def test_report_states_the_side_load_of_a_tilted_foot() -> None:
+    """A foot that was tilted: its cross-sensitivities stand in the page as in the file, and the caution is gone."""
+    rng = np.random.default_rng(100)
+    sensor = draw_sensor("B", rng)
+    level = as_session(run_session(sensor, rng, parts=("presses", "cycles", "quick")))
+    result = fit_sessions([level, as_session(run_tilted(sensor, rng))])
+    page, cross = calibration_page(result), result.calibration.file.model.cross_axis
+    facts = dict(page.sections[0].facts)
+
+    assert f"{100.0 * cross.x:+.2f} %" in facts["Side load"]
+    assert f"{100.0 * cross.y:+.2f} %" in facts["Side load"]
+    assert not any("Side loads were not tested" in caution for caution in page.cautions)
 
 
 def test_every_step_set_aside_is_named(html: str, result: FitResult) -> None:
