@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
+from typing import Final
 
 from threadpoolctl import threadpool_limits
 
@@ -23,11 +24,13 @@ from footcal.fit.pumping import with_reference
 from footcal.fit.reference import Aligned
 from footcal.fit.rows import Rows, join_rows
 from footcal.fit.set_aside import Aside
-from footcal.fit.shape import check_shape
+from footcal.fit.shape import check_shape, loop_width
 from footcal.fit.side_load import side_load
 from footcal.fit.swing import swing_rows
 from footcal.fit.terms import Terms
 from footcal.fit.trust import runtime_uncertainty
+
+WRONG_LOOP: Final = 0.001  # of full scale: a narrower loop the wrong way round is noise
 
 __all__ = ["FitOutcome", "FitResult", "fit_sessions"]
 
@@ -124,6 +127,8 @@ def _notes(data: FitInput, best: Candidate, aligned: Aligned | None, lag_s: floa
     dwell_s = max(hold.t_end_s - hold.t_load_s for hold in data.holds)
     if best.fitted.terms.creep and dwell_s < 60.0:
         notes.append(f"longest dwell {dwell_s:.0f} s: creep over minutes is extrapolated by the smooth spectrum")
+    if loop_width(best.fitted) < -WRONG_LOOP:
+        notes.append("the fitted loop would give energy back: check the order and the directions of the steps")
     left_ms = 1e3 * (data.lag_s - lag_s)
     if left_ms > 0.05:
         notes.append(f"{left_ms:.2f} ms of the sensor's lag stay in: undoing them would add more noise than they cost")

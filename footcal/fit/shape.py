@@ -6,6 +6,7 @@ import numpy as np
 
 from footcal.errors import FitRefusedError
 from footcal.fit.passes import Fitted
+from footcal.sensor.hysteresis import PLAY_HALF_WIDTH
 from footcal.sensor.model import CREEPS, PLAYS, PLAYS_BY_LOAD, POWERS
 
 
@@ -21,6 +22,17 @@ def smallest_slope(fitted: Fitted, points: int = 200) -> tuple[float, float]:
     slope = slope + float(np.sum(fitted.coefficients[CREEPS])) - np.sum(np.maximum(loops, 0.0), axis=0)
     lowest = int(np.argmin(slope))
     return float(slope[lowest]), float(v[lowest])
+
+
+def loop_width(fitted: Fitted) -> float:
+    """Return the width of the fitted loop at mid-range, share of full scale: force loading less force unloading.
+
+    At the same reading a sensor that lags carries less force while it is unloaded, so the width is positive and the
+    loop takes energy: F_loading - F_unloading = -2 sum (w_i + w'_i v) h_i.
+    """
+    v = 0.5 * float(np.max(fitted.features[:, 1]))
+    weights = fitted.coefficients[PLAYS] + fitted.coefficients[PLAYS_BY_LOAD] * v
+    return -2.0 * float(weights @ np.array(PLAY_HALF_WIDTH))
 
 
 def check_shape(fitted: Fitted, foot_id: str) -> None:
