@@ -13,6 +13,7 @@ _PUBLIC = {  # public name -> module it lives in; imported when first used, so t
     "Compensator": "footcal.sensor.compensator",
     "FitResult": "footcal.fit.engine",
     "FootcalError": "footcal.errors",
+    "ForceModel": "footcal.fit.estimator",
     "ForceColumns": "footcal.sensor.compensator",
     "Health": "footcal.records",
     "LegEstimate": "footcal.records",

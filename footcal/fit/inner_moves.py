@@ -40,7 +40,7 @@ class Move:
 class _Window:
     t_s: FloatArray  # (m,) session time of the short means
     left: FloatArray  # (m,) what smooth creep does not explain
-    noise: float  # of one short mean, from differences, which a lone step does not disturb
+    noise: float  # of one short mean, from sample to sample, which slower moves hardly disturb
 
 
 def moved_holds(channel: Channel, apparent: FloatArray, holds: Sequence[Hold], session_of: IntArray) -> dict[int, Move]:
@@ -82,7 +82,8 @@ def _window(channel: Channel, apparent: FloatArray, hold: Hold, offset_s: float)
     means = np.add.reduceat(apparent[: edges[-1]], edges[:-1]) / lengths
     times = np.add.reduceat(t_s[: edges[-1]], edges[:-1]) / lengths - offset_s
     left = means - _creep(np.log(np.maximum(times - hold.t_load_s, 0.05)), means)
-    return _Window(times, left, robust_sd(np.diff(left)) / float(np.sqrt(2.0)))
+    jitter = robust_sd(np.diff(apparent[first:last])) / float(np.sqrt(2.0 * np.median(lengths)))
+    return _Window(times, left, jitter)
 
 
 def _creep(x: FloatArray, y: FloatArray) -> FloatArray:

@@ -11,6 +11,7 @@ from rich.progress import track
 from rich.table import Table
 
 from footcal.sim.bench import PARTS, STATIC_ONLY
+from tests.score.faults import NAMES, SHARES_OF_LEAST, score_faults, summed
 from tests.score.sensors import KINDS, TRIALS, score_foot
 from tests.score.walks import DRIVES, MOTIONS, score_walk
 
@@ -81,18 +82,51 @@ def score_walks(first_seed: int, runs: int, out: Console) -> None:
     out.print(table)
 
 
+def score_bad_steps(first_seed: int, feet: int, out: Console) -> None:
+    """Fit `feet` faulty sessions of each kind and size and print what was named."""
+    title = f"Faults named of those injected, {feet} sessions of each kind and size (seeds from {first_seed})"
+    table = Table(title=f"{title}; size 1 to 2 x the share of max(2 % FS, 5 placement sd)")
+    for name in ("sensor", "size", "spike", "bump", "tug", "slow", "wrong mass", "bump, tug, mass, %"):
+        table.add_column(name, justify="left" if name == "sensor" else "right")
+    table.add_column("mass said is not the true one", justify="right")
+    table.add_column("good steps set aside, %", justify="right")
+    for share in reversed(SHARES_OF_LEAST):
+        of_kind = {
+            kind: summed([score_faults(kind, seed, share) for seed in range(first_seed, first_seed + feet)])
+            for kind in track(KINDS, description=f"faults x {share:g}", console=Console(stderr=True))
+        }
+        for kind, score in {**of_kind, "all": summed(list(of_kind.values()))}.items():
+            hit, of = score.share()
+            table.add_row(
+                kind,
+                f"{share:g}",
+                *(f"{score.named[name][0]}/{score.named[name][1]}" for name in NAMES),
+                f"{100.0 * hit / max(of, 1):.1f}",
+                str(len(score.wrongly_named)),
+                f"{100.0 * score.false / score.good:.2f}",
+            )
+        table.add_section()
+    out.print(table)
+
+
 def main() -> None:
-    """Print both tables."""
+    """Print the tables."""
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("--seed", type=int, default=None, help="first seed; a fresh one above 10 000 where not given")
     parser.add_argument("--feet", type=int, default=3, help="feet of each kind")
+    parser.add_argument("--faulty", type=int, default=1, help="faulty sessions of each kind and size")
+    parser.add_argument("--only", choices=("sensors", "walks", "faults"), default=None, help="one table only")
     parser.add_argument("--runs", type=int, default=2, help="runs of each motion and drive")
     options = parser.parse_args()
     seed = options.seed if options.seed is not None else 10_000 + secrets.randbelow(1_000_000)
     out = Console(width=150)
     out.print(f"make score SEED={seed} repeats this run")
-    score_sensors(seed, options.feet, out)
-    score_walks(seed, options.runs, out)
+    if options.only in {None, "sensors"}:
+        score_sensors(seed, options.feet, out)
+    if options.only in {None, "walks"}:
+        score_walks(seed, options.runs, out)
+    if options.only in {None, "faults"}:
+        score_bad_steps(seed, options.faulty, out)
 
 
 if __name__ == "__main__":
