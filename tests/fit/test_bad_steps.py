@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import replace
 from functools import cache
 
 import numpy as np
 import pytest
+from threadpoolctl import threadpool_limits
 
 from footcal.files.session import Session
 from footcal.fit.bad_steps import without_bad_steps
@@ -23,6 +25,13 @@ from footcal.sim.sensors import draw_sensor
 from tests.simulated import as_session
 
 PARTS = ("presses", "cycles", "minor", "quick")
+
+
+@pytest.fixture(autouse=True)
+def _one_thread() -> Iterator[None]:
+    """As fit_sessions does: the factors are small, and more threads only wait for each other."""
+    with threadpool_limits(limits=1):
+        yield
 
 
 @cache
