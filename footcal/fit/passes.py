@@ -116,7 +116,7 @@ def _fit_curve(x: FloatArray, theta: FloatArray, rows: Rows, terms: Terms) -> tu
             np.concatenate([rows.target[holds] * root, target[len(root) :]]),
         ).coefficients
         residual = rows.target[holds] - columns[:, active] @ found
-        scale = row_scales(residual, np.zeros(len(residual), dtype=bool), SCALE_FLOOR)
+        scale = row_scales(residual, rows.hold[holds], SCALE_FLOOR)
         huber = huber_weights(residual / scale)
     full = np.zeros(N_POWERS + N_TEMPERATURE)
     full[active] = found
@@ -144,7 +144,7 @@ def _solve_robust(
             np.vstack([columns * root[:, None], prior]), np.concatenate([rows.target * root, zeros])
         ).coefficients
         residual = rows.target - columns @ found
-        scale = row_scales(residual, rows.pump, floor)
+        scale = row_scales(residual, rows.hold, floor)
         huber = huber_weights(residual / scale)
     coefficients = np.zeros(N_FEATURES)
     coefficients[active] = found

@@ -9,8 +9,10 @@ from typing import Final
 
 import numpy as np
 
-from footcal.records import BoolArray, FloatArray
+from footcal.records import FloatArray, IntArray
 
+PUMP: Final = -1
+SWING: Final = -2
 HUBER_K: Final = 2.5
 MAD_TO_SD: Final = 1.482602218505602  # 1 / Phi^-1(3/4)
 
@@ -25,11 +27,18 @@ def huber_weights(scaled: FloatArray) -> FloatArray:
     return HUBER_K / np.maximum(np.abs(scaled), HUBER_K)
 
 
-def row_scales(residual: FloatArray, pump: BoolArray, floor: float) -> FloatArray:
-    """Return the robust scale of each row, shape (n,): one scale for holds, another for pump rows.
+def row_scales(residual: FloatArray, source: IntArray, floor: float) -> FloatArray:
+    """Return the robust scale of each row, shape (n,): one for holds, one for pump rows, one for swings.
 
-    Moving data never count for more than settled holds: an unloaded foot that reads the same a thousand times over
-    would otherwise outweigh every load.
+    An unloaded foot that reads the same a thousand times over must not outweigh every load, so swings never count for
+    more than settled holds.
+
+    Args:
+        residual: shape (n,).
+        source: what each row comes from, shape (n,): 0 or more a hold, PUMP, or SWING.
+        floor: smallest scale.
     """
-    settled = max(robust_sd(residual[~pump]), floor)
-    return np.where(pump, max(robust_sd(residual[pump]), settled), settled)
+    settled = max(robust_sd(residual[source >= 0]), floor)
+    pump = max(robust_sd(residual[source == PUMP]), floor)
+    swing = max(robust_sd(residual[source == SWING]), settled)
+    return np.select([source >= 0, source == PUMP], [settled, pump], swing)

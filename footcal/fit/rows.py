@@ -27,7 +27,7 @@ class Rows:
     stop: IntArray  # one past the last
     target: FloatArray  # force over full scale
     weight: FloatArray
-    hold: IntArray  # index into the holds; -1 for pump rows
+    hold: IntArray  # index into the holds; PUMP or SWING (robust.py) for moving data
     cycle: IntArray  # group of cycles, -1 where none
     level: IntArray  # group of load levels, -1 where it is not left out (zero, the top load, pump)
     block: IntArray  # group of pump blocks, -1 for holds

@@ -23,6 +23,7 @@ from footcal.files.session_meta import SessionMeta
 from footcal.fit.holds import bench_place
 from footcal.fit.inputs import FitInput
 from footcal.fit.outcome import FitResult
+from footcal.fit.robust import SWING
 from footcal.fit.rows import Rows, pump_rows
 from footcal.records import BoolArray, FloatArray
 
@@ -106,7 +107,8 @@ def swing_rows(data: FitInput) -> Rows | None:
         force_N[data.channel.session == number] = bench_place(session.meta).zero_N
     if not windows:
         return None
-    return pump_rows(data.channel, windows, force_N, data.capacity_N)
+    rows = pump_rows(data.channel, windows, force_N, data.capacity_N)
+    return replace(rows, hold=np.full(len(rows.hold), SWING))
 
 
 def swings_s(t_s: FloatArray, force_N: FloatArray) -> list[tuple[float, float]]:
