@@ -12,7 +12,6 @@ from footcal.sensor.creep import lagged
 
 SESSION_GAP_S = 120.0  # put between joined sessions, so that creep and loop start afresh
 THERMOMETER_LAG_S = 30.0  # the sensing element follows its thermometer this slowly (common practice, no source)
-RAW_EDGE = 1e-3  # of the converter's range: nearer than this to an end, a divider or pad is saturated
 
 
 @dataclass(frozen=True, slots=True)

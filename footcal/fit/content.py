@@ -204,23 +204,28 @@ def _temperature_range(data: FitInput) -> dict[str, Any]:
 def _budget(
     data: FitInput, best: Candidate, rows: Rows, uncertainty: RuntimeUncertainty, covariance: FloatArray
 ) -> list[dict[str, Any]]:
-    """Return the sources of uncertainty at the top of the range."""
+    """Return the sources of uncertainty at the top of the range, each counted once."""
     top = float(rows.target.max())
     highest = best.fitted.features[int(np.argmax(rows.target))]
     full_scale_N = data.capacity_N
     gravity = data.place.gravity_u_m_per_s2 / data.place.gravity_m_per_s2
-    masses_N = max(hold.load_u_N for hold in data.holds)
+    fixed = _without(uncertainty.fixed, DAY_ZERO[data.kind])
+    relative = _without(uncertainty.relative, DAY_SPAN[data.kind], gravity)
     lines = [
         ("fit (parameters)", float(np.sqrt(highest @ covariance @ highest)), "A", "covariance of the coefficients"),
         ("local gravity", gravity * top, "B", f"{data.place.gravity_m_per_s2:g} m/s2, relative {gravity:.1e}"),
-        ("reference masses, gravity and air", masses_N / full_scale_N, "B", "standard uncertainty of the top load"),
-        ("fixed error left over", uncertainty.fixed, "A", "cycles and load levels left out, and zero between days"),
-        ("error in proportion to load", uncertainty.relative * top, "A", "as above, and span between days"),
+        ("fixed error left over", fixed, "A", "cycles and load levels left out"),
+        ("error in proportion to load", relative * top, "A", "cycles and load levels left out, untested temperature"),
         ("noise of one sample", uncertainty.noise, "A", "opening zero"),
-        ("zero between days", DAY_ZERO[data.kind], "B", "stated default, common practice; part of the fixed error"),
-        ("span between days", DAY_SPAN[data.kind] * top, "B", "stated default, common practice; part of the above"),
+        ("zero between days", DAY_ZERO[data.kind], "B", "stated default, common practice, no source"),
+        ("span between days", DAY_SPAN[data.kind] * top, "B", "stated default, common practice, no source"),
     ]
     return [{"source": s, "u_N": u * full_scale_N, "kind": kind, "basis": basis} for s, u, kind, basis in lines]
+
+
+def _without(whole: float, *parts: float) -> float:
+    """Return what is left of a root sum of squares when some of its parts are named apart."""
+    return float(np.sqrt(max(whole**2 - sum(part**2 for part in parts), 0.0)))
 
 
 def _sessions(data: FitInput) -> list[dict[str, Any]]:

@@ -115,6 +115,7 @@ def _looked_at_again(
 def _notes(data: FitInput, best: Candidate, aligned: Aligned | None, lag_s: float) -> list[str]:
     """Say what the sessions could not tell, and what was assumed."""
     notes = [*data.assumed, *(f"{data.sessions[one.session].name}, {one.words()}" for one in data.corrections)]
+    notes.append("reference masses are taken as exact: their class does not enter the stated uncertainty")
     notes += odd_dwells(data)
     if not any(hold.direction == "zero" for hold in data.holds):
         notes.append("no zero was recorded: below the lowest load the curve is extrapolated")

@@ -72,8 +72,13 @@ UNSTICK, STUCK_SD, MOVING_SD, FRIC_TAU_S, DQ_TAU_S, W_TAU_S, LEAD, VARIES, COUPL
 
 def leg_state_fields(legs: int, joints: int) -> list[Field]:
     """Return name, type and shape of every state field of the leg part: handed on, remembered, work rows."""
-    J, L = joints, legs
-    handed_on: list[Field] = [
+    parts = [part(joints, legs) for part in (_handed_on, _remembered, _work)]
+    return [*parts[0], *parts[1], *parts[2], ("leg_ready", "i8", (1,)), *leg_constant_fields(legs, joints)]
+
+
+def _handed_on(J: int, L: int) -> list[Field]:
+    """What the filter reads."""
+    return [
         ("foot_B_m", "f8", (3, L)),  # ball centre
         ("jac_B", "f8", (3, J, L)),  # m/rad
         ("axis_B", "f8", (3, L)),  # sensor axis + cross-sensitivity
@@ -88,7 +93,11 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("tau_lag_s", "f8", (J, L)),
         ("motor_age_s", "f8", (L,)),
     ]
-    remembered: list[Field] = [
+
+
+def _remembered(J: int, L: int) -> list[Field]:
+    """What is kept from tick to tick."""
+    return [
         ("leg_phi", "f8", (J, L)),  # actuator angle of the last encoder reading, rad
         ("leg_dphi", "f8", (J, L)),
         ("leg_phi_age_s", "f8", (J, L)),  # inf until the encoder spoke
@@ -113,7 +122,11 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("leg_quat", "f8", (4,)),  # last attitude; zeros until one was given
         ("leg_gyro_on", "i8", (1,)),
     ]
-    work: list[Field] = [
+
+
+def _work(J: int, L: int) -> list[Field]:
+    """Rows that are written and read within one step."""
+    return [
         ("leg_h", "f8", (3, L)),  # sensor axis + cross-sensitivity, last link
         ("leg_speed", "f8", (J, L)),  # newly read actuator speed
         ("leg_gap_s", "f8", (J, L)),  # time since the reading before; 0 where none is new
@@ -129,11 +142,7 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("leg_av", "f8", (3, J, L)),  # angular rate, angular acceleration, acceleration - gravity of the joint origin
         ("leg_aa", "f8", (3, J, L)),
         ("leg_la", "f8", (3, J, L)),
-        (
-            "leg_F",
-            "f8",
-            (3, J + 1, L),
-        ),  # force and moment a joint hands on to its link; the row after the last joint is 0
+        ("leg_F", "f8", (3, J + 1, L)),  # force and moment a joint hands to its link; the row after the last is 0
         ("leg_N", "f8", (3, J + 1, L)),
         ("leg_ratio", "f8", (J, L)),
         ("leg_dratio", "f8", (J, L)),
@@ -144,7 +153,6 @@ def leg_state_fields(legs: int, joints: int) -> list[Field]:
         ("leg_grip", "f8", (J, L)),  # tanh(speed / stuck speed)
         ("leg_bump", "f8", (J, L)),  # Stribeck's exponential
     ]
-    return handed_on + remembered + work + [("leg_ready", "i8", (1,)), *leg_constant_fields(legs, joints)]
 
 
 def leg_constant_fields(legs: int, joints: int) -> list[Field]:
